@@ -1,0 +1,1 @@
+"""cropstress: what heat and photorespiration cost a crop, cell by cell."""
