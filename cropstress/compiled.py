@@ -61,18 +61,32 @@ CACHE_FOLDER = _writable_cache_folder()
 
 
 def inlined(function: Callable[..., Any]) -> Any:
-    """Compile a small relation so that it is copied into every loop that calls it."""
+    """Compile a small relation so that it is copied into every loop that calls it; no missing values."""
     return numba.njit(forceinline=True, fastmath=FAST_MATH, error_model="numpy")(function)
 
 
+def exact_inlined(function: Callable[..., Any]) -> Any:
+    """Compile a small relation that may meet missing values."""
+    return numba.njit(forceinline=True, error_model="numpy")(function)
+
+
 def kernel(function: Callable[..., Any]) -> Any:
-    """Compile a loop over lanes or cells: single-threaded, without the global lock, cached on disk."""
+    """Compile a loop over lanes: single-threaded, without the global lock, cached; no missing values."""
+    return _cached(function, FAST_MATH)
+
+
+def exact_kernel(function: Callable[..., Any]) -> Any:
+    """Compile a loop over cells that may meet missing values."""
+    return _cached(function, False)
+
+
+def _cached(function: Callable[..., Any], fast_math: set[str] | bool) -> Any:
     before = numba.config.CACHE_DIR
     if CACHE_FOLDER is not None:
         numba.config.CACHE_DIR = CACHE_FOLDER
     try:
         return numba.njit(
-            nogil=True, fastmath=FAST_MATH, error_model="numpy", cache=CACHE_FOLDER is not None
+            nogil=True, fastmath=fast_math, error_model="numpy", cache=CACHE_FOLDER is not None
         )(function)
     finally:
         numba.config.CACHE_DIR = before

@@ -19,6 +19,7 @@ import numpy as np
 from cropstress.compiled import exponential, inlined, kernel
 from cropstress.leaf.air import (
     AIR_HEAT_CAPACITY,
+    EVAPORATION_HEAT,
     VAPOUR_TO_CO2_BOUNDARY,
     VAPOUR_TO_CO2_STOMATA,
     energy_surplus,
@@ -38,6 +39,7 @@ _SCAN_STEPS = 40
 _REFINING_STEPS = 24
 _START = 0.35  # share of the way up the bracket, measured
 _TOLERANCE = 1e-5  # of cp (gH + gr), in K: energy left over in an accepted solution
+_KEPT_OPEN = 0.5  # 1; see `expected_slope`
 _LAST_STEP = 1e-3  # K: a larger last step means that the secant had not settled
 _LEAST_CO2 = 1.0  # umol mol-1: a Newton step that overshoots is caught here
 _FIRST_CO2_SHARE = 0.7  # of the air's CO2: where the search starts
@@ -128,6 +130,17 @@ def improved_rates(leaf, state, enzyme, light, co2, resistance, factor, pressure
 
 
 @inlined
+def expected_slope(leaf_temperature, saturation, sensible, vapour, conductance, pressure):  # type: ignore[no-untyped-def]
+    """Return about how fast the surplus falls with leaf temperature [W m-2 K-1], for a first step.
+
+    Stomata that close as the air gets drier give back about half of what the deficit adds (measured).
+    """
+    steepness = 4098.0 * saturation / ((leaf_temperature + 237.3) * (leaf_temperature + 237.3))  # FAO-56 Eq. 13
+    passed = conductance * vapour / (conductance + vapour)
+    return -AIR_HEAT_CAPACITY * sensible - _KEPT_OPEN * EVAPORATION_HEAT * passed * steepness / pressure
+
+
+@inlined
 def combined_rate(leaf, state, enzyme, light, co2, resistance):  # type: ignore[no-untyped-def]
     """Return the net rate, from the limits and the CO2 inside a leaf that only respires."""
     at_rest = co2 + (resistance + VAPOUR_TO_CO2_STOMATA / leaf.stomatal_intercept) * state.respiration
@@ -168,6 +181,7 @@ def solve_block(leaf, lanes, width, oxygenation, careful, answers):  # type: ign
     before = np.empty(LANES)
     surplus = np.empty(LANES)
     surplus_before = np.empty(LANES)
+    first_slope = np.empty(LANES)
     lower = np.empty(LANES)
     upper = np.empty(LANES)
     stride = np.empty(LANES)
@@ -242,6 +256,9 @@ def solve_block(leaf, lanes, width, oxygenation, careful, answers):  # type: ign
             surplus[i] = energy_surplus(
                 temperature[i], air[i], deficit, net_radiation[i], sensible[i], vapour[i], conductance, pressure[i]
             )
+            first_slope[i] = expected_slope(
+                temperature[i], humidity[i] + deficit, sensible[i], vapour[i], conductance, pressure[i]
+            )
         if careful and step < _SCAN_STEPS:
             for i in range(width):
                 here, coolest, warmest, left_over, crossed = (
@@ -270,17 +287,10 @@ def solve_block(leaf, lanes, width, oxygenation, careful, answers):  # type: ign
                 moved = here - before[i]
                 small = abs(moved) < 1e-9
                 secant = (left_over - surplus_before[i]) / (1.0 if small else moved)
-                # The first step, and any that would not fall, takes a slope with the stomata half open.
-                slope = -2.0 * conducted if small or secant > -0.05 * conducted else secant
-                coolest = here if left_over > 0.0 else coolest
-                warmest = warmest if left_over > 0.0 else here
-                proposed = here - left_over / slope
-                inside = proposed > coolest and proposed < warmest
-                lower[i] = coolest
-                upper[i] = warmest
+                slope = first_slope[i] if small or secant > -0.05 * conducted else secant
                 before[i] = here
                 surplus_before[i] = left_over
-                temperature[i] = proposed if inside else 0.5 * (coolest + warmest)
+                temperature[i] = min(max(here - left_over / slope, coolest), warmest)
 
     for i in range(width):
         state = leaf_state(
@@ -353,3 +363,60 @@ def solve_leaves(leaf, lanes, oxygenation, answers):  # type: ignore[no-untyped-
         solve_block(leaf, few, CAREFUL_LANES, oxygenation, True, few_answers)
         for i in range(count):
             answers[:LEAF_OUTPUTS, places[i]] = few_answers[:, i]
+
+
+@kernel
+def gross_without_oxygenation(leaf, lanes, temperature, deficit, start, answers):  # type: ignore[no-untyped-def]
+    """Gross assimilation without oxygenation at a given leaf temperature and deficit.
+
+    Parameters
+    ----------
+    leaf : record of `C3_LEAF` or `C4_LEAF`
+    lanes : float64 array (LEAF_INPUTS, LANES)
+    temperature, deficit : float64 array (LANES,)
+        Leaf temperature [degC] and leaf-to-air deficit [kPa], held.
+    start : float64 array (LANES,)
+        A net rate to start from [umol m-2 s-1].
+    answers : float64 array (LANES,)
+        Written: net rate plus respiration [umol m-2 s-1].
+    """
+    leaf_temperature = np.empty(LANES)
+    leaf_deficit = np.empty(LANES)
+    photons = np.empty(LANES)
+    capacity = np.empty(LANES)
+    pressure = np.empty(LANES)
+    co2 = np.empty(LANES)
+    growth = np.empty(LANES)
+    vapour = np.empty(LANES)
+    first_guess = np.empty(LANES)
+    gross = np.empty(LANES)
+    for i in range(LANES):
+        leaf_temperature[i] = temperature[i]
+        leaf_deficit[i] = deficit[i]
+        first_guess[i] = start[i]
+    for i in range(LANES):
+        photons[i] = lanes[PHOTONS, i]
+        capacity[i] = lanes[CAPACITY, i]
+        pressure[i] = lanes[PRESSURE, i]
+    for i in range(LANES):
+        co2[i] = lanes[CO2, i]
+        growth[i] = lanes[GROWTH_TEMPERATURE, i]
+        vapour[i] = lanes[WIND, i]
+    for i in range(LANES):
+        normal_carboxylation, normal_electron_transport = normal_capacities(leaf, growth[i])
+        state = leaf_state(
+            leaf, leaf_temperature[i], photons[i], capacity[i], growth[i], normal_carboxylation,
+            normal_electron_transport, pressure[i], 0.0,
+        )  # fmt: skip
+        resistance = VAPOUR_TO_CO2_BOUNDARY / vapour_conductance(vapour[i], leaf.leaf_width)
+        factor = stomatal_factor(leaf.stomatal_slope, leaf_deficit[i])
+        enzyme = first_guess[i]
+        light = first_guess[i]
+        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
+        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
+        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
+        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
+        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
+        gross[i] = combined_rate(leaf, state, enzyme, light, co2[i], resistance) + state.respiration
+    for i in range(LANES):
+        answers[i] = gross[i]

@@ -1,0 +1,1 @@
+"""One day of one cell: sun, courses, canopy and what heat and photorespiration took."""

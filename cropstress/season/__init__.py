@@ -1,0 +1,1 @@
+"""One season of one cell: stages, counts and sums."""
