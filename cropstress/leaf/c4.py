@@ -117,7 +117,7 @@ def quadratic_rate(square: float, linear: float, constant: float, pumped: float,
 
 @inlined
 def c4_enzyme_demand(leaf: Any, state: C4State, co2: float, pressure: float) -> tuple[float, float]:
-    """Return the enzyme-limited net rate and its slope with intercellular CO2; published-values C-4."""
+    """Return the enzyme-limited net rate and its slope with intercellular CO2."""
     to_pressure = _MICROBAR_PER_MOLE_FRACTION * pressure
     mesophyll = co2 * to_pressure
     oxygen = mesophyll_oxygen(leaf, pressure)
@@ -169,7 +169,7 @@ def c4_light_demand(leaf: Any, state: C4State, co2: float, pressure: float) -> t
 
 @inlined
 def c4_net_rate(leaf: Any, state: C4State, enzyme: float, light: float, co2_at_rest: float) -> float:
-    """Return the smaller of the two limits, each solved with the stomata by itself; published-values C-7."""
+    """Return the smaller of the two limits, each solved with the stomata by itself."""
     return min(enzyme, light)
 
 

@@ -1,0 +1,61 @@
+"""Response curves of one leaf: the command `leaf`."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pandas as pd
+
+from cropstress.crops import load_crop
+from cropstress.errors import fail
+from cropstress.leaf.gas_exchange import gas_exchange
+from cropstress.report.curves import leaf_figure
+from cropstress.report.writing import written_aside
+
+AIR_TEMPERATURES = np.arange(5.0, 46.0)  # degC
+CO2_LEVELS = (280.0, 421.0, 600.0)  # umol mol-1: before industry, 2023, a future
+
+
+def leaf_curves(crop: str, folder: str | Path, photons: float = 1500.0, humidity: float = 50.0) -> list[str]:
+    """Write how a leaf of a crop answers air temperature, at several CO2.
+
+    Parameters
+    ----------
+    crop : str
+        Name of a profile, or a file.
+    folder : path
+    photons : float
+        [umol m-2 s-1]
+    humidity : float
+        Relative humidity of the air [%].
+
+    Returns
+    -------
+    list of str
+        Lines for the screen: the table at today's CO2 and the files written.
+    """
+    if not 1.0 <= humidity <= 100.0:
+        raise fail(f"{humidity:g} is not a relative humidity", "--humidity", "Give a value from 1 to 100 %.")
+    profile = load_crop(crop)
+    air, co2 = (array.ravel() for array in np.meshgrid(AIR_TEMPERATURES, CO2_LEVELS))
+    vapour_pressure = 0.01 * humidity * 0.6108 * np.exp(17.27 * air / (air + 237.3))  # FAO-56 Eq. 11
+    answer = gas_exchange(profile, air, vapour_pressure, photons, co2)
+    table = pd.DataFrame(
+        {"air_temperature": air, "co2": co2} | {name: answer[name].values for name in map(str, answer.data_vars)}
+    )
+    folder = Path(folder)
+    table_path, figure_path = folder / f"leaf-{profile.name}.csv", folder / f"leaf-{profile.name}.png"
+    with written_aside(table_path) as aside:
+        table.round(4).to_csv(aside, index=False)
+    leaf_figure(
+        table, figure_path, label=profile.label, heat_onset=profile.number("heat_onset"),
+        notes=[f"{photons:g} umol m-2 s-1 of light, relative humidity {humidity:g} %, wind 2 m/s, 101.3 kPa"],
+    )  # fmt: skip
+    today = table[(table["co2"] == 421.0) & (table["air_temperature"] % 5 == 0)]
+    lines = [f"{profile.label}: air [degC], net assimilation and the same without oxygenation [umol m-2 s-1], 421 umol/mol"]
+    lines += [
+        f"  {row.air_temperature:5.0f} {row.assimilation:8.1f} {row.assimilation_without_oxygenation:8.1f}"
+        for row in today.itertuples()
+    ]
+    return [*lines, str(table_path), str(figure_path)]

@@ -1,0 +1,162 @@
+"""One place through its season, day by day: the command `trace`."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pandas as pd
+
+from cropstress.day import block
+from cropstress.errors import fail
+from cropstress.job import prepare
+from cropstress.region.compute import compute
+from cropstress.region.plan import Plan
+from cropstress.region import make_plan
+from cropstress.report.curves import trace_figure
+from cropstress.report.writing import written_aside
+from cropstress.season import layout as at
+from cropstress.season.measures import CAUSES, STAGES
+from cropstress.weather import cell_latitude_longitude
+
+_COLUMNS = {
+    "assimilation": block.ASSIMILATION,
+    "lost_to_heat": block.LOST_TO_HEAT,
+    "lost_to_heat_by_photorespiration": block.BY_PHOTORESPIRATION,
+    "lost_to_heat_by_stomata": block.BY_STOMATA,
+    "lost_to_heat_by_enzymes": block.BY_ENZYMES,
+    "lost_to_heat_by_respiration": block.BY_RESPIRATION,
+    "lost_to_photorespiration": block.LOST_TO_PHOTORESPIRATION,
+    "photorespired_co2": block.PHOTORESPIRED_CO2,
+    "highest_leaf_temperature": block.HIGHEST_LEAF,
+    "mean_vapour_pressure_deficit": block.DAYTIME_DEFICIT,
+    "leaf_area": at.DAILY_LEAF_AREA,
+    "hot_hours": at.DAILY_HOT_HOURS,
+    "growth_temperature": at.DAILY_GROWTH_TEMPERATURE,
+}
+
+
+def nearest_cell(latitude: np.ndarray, longitude: np.ndarray, wanted: tuple[float, float]) -> tuple[int, float]:
+    """Return the number of the nearest cell centre and its distance [km] on a sphere of 6371 km."""
+    phi, lam = np.radians(latitude.ravel()), np.radians(longitude.ravel())
+    phi0, lam0 = np.radians(wanted[0]), np.radians(wanted[1])
+    half = np.sin((phi - phi0) / 2) ** 2 + np.cos(phi) * np.cos(phi0) * np.sin((lam - lam0) / 2) ** 2
+    distance = 2.0 * 6371.0 * np.arcsin(np.sqrt(np.clip(half, 0.0, 1.0)))
+    cell = int(np.argmin(distance))
+    return cell, float(distance[cell])
+
+
+def trace(path: str | Path, place: tuple[float, float], out: str | Path | None = None) -> list[Path]:
+    """Write what every day of a season gave at one place, as CSV and figure, for each crop entry.
+
+    Parameters
+    ----------
+    path : path
+        The run file.
+    place : tuple of float
+        Latitude and longitude [degrees]; the nearest cell is taken.
+    out : path, optional
+        Folder; by default `trace` in the run's output folder.
+
+    Returns
+    -------
+    list of pathlib.Path
+        The files written.
+
+    Raises
+    ------
+    InputError
+        When the place lies outside the grid, or anything of the run file is at fault.
+    """
+    job = prepare(path)
+    latitude, longitude = cell_latitude_longitude(job.dataset)
+    cell, distance = nearest_cell(latitude, longitude, place)
+    rows, columns = latitude.shape
+    row, column = divmod(cell, columns)
+    reach = _cell_size(latitude, longitude, row, column)
+    if distance > reach:
+        raise fail(
+            f"the nearest cell centre is {distance:.0f} km away",
+            f"place {place[0]:g}, {place[1]:g}",
+            f"Give a place within the grid: latitude {latitude.min():.2f} to {latitude.max():.2f}, "
+            f"longitude {longitude.min():.2f} to {longitude.max():.2f}.",
+        )
+    one = job.dataset.isel({name: slice(number, number + 1) for name, number in zip(
+        job.dataset["tmax"].dims[1:], (row, column), strict=True)})  # fmt: skip
+    folder = Path(out) if out is not None else job.run_file.output_folder / "trace"
+    written = []
+    for entry in job.entries:
+        single = _at_cell(entry, cell)
+        if not (single.grown & (single.sowing >= 0).any(axis=0)).any():
+            continue
+        plan = Plan(make_plan(one).blocks, [(0, 1, 0, 1)])
+        state = compute(one, [single], plan, job.axis, threads=1, keep_daily=True).tiles[entry.name][0]
+        daily = np.concatenate(state.daily, axis=1)[0, :, :, 0]
+        table = _table(daily, one, job.axis)
+        window = _flowering_rows(state.totals[0], entry, table)
+        stem = f"{entry.name}-{abs(place[0]):g}{'N' if place[0] >= 0 else 'S'}-{abs(place[1]):g}{'E' if place[1] >= 0 else 'W'}"
+        table_path = folder / f"{stem}.csv"
+        with written_aside(table_path) as aside:
+            table.to_csv(aside, index=False)
+        figure_path = folder / f"{stem}.png"
+        trace_figure(
+            table, figure_path, label=entry.label,
+            place=f"{latitude[row, column]:.3f}, {longitude[row, column]:.3f}",
+            heat_onset=float(entry.season["heat_onset"][0]), hot_day_limit=float(entry.season["hot_day_limit"][0]),
+            flowering_window=window,
+        )  # fmt: skip
+        written += [table_path, figure_path]
+    if not written:
+        raise fail(
+            "no crop entry grows in this cell", f"place {place[0]:g}, {place[1]:g}",
+            "Choose a place inside the crop areas of the run file.",
+        )  # fmt: skip
+    return written
+
+
+def _cell_size(latitude: np.ndarray, longitude: np.ndarray, row: int, column: int) -> float:
+    """Return the distance to the farthest neighbour of a cell, at least 25 km [km]."""
+    rows, columns = latitude.shape
+    largest = 25.0
+    for r, c in ((row + 1, column), (row - 1, column), (row, column + 1), (row, column - 1)):
+        if 0 <= r < rows and 0 <= c < columns:
+            _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], (latitude[row, column], longitude[row, column]))
+            largest = max(largest, step)
+    return largest
+
+
+def _at_cell(entry, cell):  # type: ignore[no-untyped-def]
+    """Return a crop entry on one cell of the map."""
+    from dataclasses import replace
+
+    return replace(entry, sowing=entry.sowing[:, cell : cell + 1], grown=entry.grown[cell : cell + 1])
+
+
+def _table(daily: np.ndarray, one, axis) -> pd.DataFrame:  # type: ignore[no-untyped-def]
+    """Return the days of the seasons, a row a day."""
+    growing = np.isfinite(daily[:, at.DAILY_STAGE])
+    days = np.nonzero(growing)[0]
+    columns: dict[str, object] = {
+        "date": [axis.iso(int(day)) for day in days],
+        "stage": [STAGES[int(stage)] for stage in daily[days, at.DAILY_STAGE]],
+    }
+    for name in ("tmax", "tmin", "vapour_pressure", "radiation"):
+        if name in one:
+            columns[name] = np.asarray(one[name].values, dtype=float).ravel()[days]
+    for name, row in _COLUMNS.items():
+        columns[name] = daily[days, row]
+    return pd.DataFrame(columns)
+
+
+def _flowering_rows(totals: np.ndarray, entry, table: pd.DataFrame) -> tuple[int, int] | None:  # type: ignore[no-untyped-def]
+    """Return the first and last row of the last season's flowering window."""
+    flowering, sowing = totals[-1, at.FLOWERING, 0], totals[-1, at.SOWING, 0]
+    if not entry.season["flowers"][0] or not flowering >= 0:
+        return None
+    before = len(table) - int(totals[-1, at.SEASON_DAYS, 0])
+    first = before + int(flowering - sowing + entry.season["window_start"][0])
+    last = before + int(flowering - sowing + entry.season["window_end"][0])
+    return (max(first, 0), min(last, len(table) - 1)) if first < len(table) else None
+
+
+assert set(CAUSES) <= {name.rsplit("_", 1)[-1] for name in _COLUMNS}
