@@ -12,7 +12,7 @@ _PUBLIC = {
     "open_weather": "cropstress.weather",
     "load_crop": "cropstress.crops",
     "assess": "cropstress.region",
-    "gas_exchange": "cropstress.leaf.gas_exchange",
+    "gas_exchange": "cropstress.one_leaf",
     "run": "cropstress.job",
 }
 

@@ -9,7 +9,7 @@ import pandas as pd
 
 from cropstress.crops import load_crop
 from cropstress.errors import fail
-from cropstress.leaf.gas_exchange import gas_exchange
+from cropstress.one_leaf import gas_exchange
 from cropstress.report.curves import leaf_figure
 from cropstress.report.writing import written_aside
 

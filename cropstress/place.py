@@ -2,21 +2,23 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 import pandas as pd
+import xarray as xr
 
 from cropstress.day import block
 from cropstress.errors import fail
 from cropstress.job import prepare
+from cropstress.region import Entry, TimeAxis, make_plan
 from cropstress.region.compute import compute
 from cropstress.region.plan import Plan
-from cropstress.region import make_plan
 from cropstress.report.curves import trace_figure
 from cropstress.report.writing import written_aside
 from cropstress.season import layout as at
-from cropstress.season.measures import CAUSES, STAGES
+from cropstress.season.measures import STAGES
 from cropstress.weather import cell_latitude_longitude
 
 _COLUMNS = {
@@ -125,14 +127,12 @@ def _cell_size(latitude: np.ndarray, longitude: np.ndarray, row: int, column: in
     return largest
 
 
-def _at_cell(entry, cell):  # type: ignore[no-untyped-def]
+def _at_cell(entry: Entry, cell: int) -> Entry:
     """Return a crop entry on one cell of the map."""
-    from dataclasses import replace
-
     return replace(entry, sowing=entry.sowing[:, cell : cell + 1], grown=entry.grown[cell : cell + 1])
 
 
-def _table(daily: np.ndarray, one, axis) -> pd.DataFrame:  # type: ignore[no-untyped-def]
+def _table(daily: np.ndarray, one: xr.Dataset, axis: TimeAxis) -> pd.DataFrame:
     """Return the days of the seasons, a row a day."""
     growing = np.isfinite(daily[:, at.DAILY_STAGE])
     days = np.nonzero(growing)[0]
@@ -148,7 +148,7 @@ def _table(daily: np.ndarray, one, axis) -> pd.DataFrame:  # type: ignore[no-unt
     return pd.DataFrame(columns)
 
 
-def _flowering_rows(totals: np.ndarray, entry, table: pd.DataFrame) -> tuple[int, int] | None:  # type: ignore[no-untyped-def]
+def _flowering_rows(totals: np.ndarray, entry: Entry, table: pd.DataFrame) -> tuple[int, int] | None:
     """Return the first and last row of the last season's flowering window."""
     flowering, sowing = totals[-1, at.FLOWERING, 0], totals[-1, at.SOWING, 0]
     if not entry.season["flowers"][0] or not flowering >= 0:
@@ -158,5 +158,3 @@ def _flowering_rows(totals: np.ndarray, entry, table: pd.DataFrame) -> tuple[int
     last = before + int(flowering - sowing + entry.season["window_end"][0])
     return (max(first, 0), min(last, len(table) - 1)) if first < len(table) else None
 
-
-assert set(CAUSES) <= {name.rsplit("_", 1)[-1] for name in _COLUMNS}

@@ -1,4 +1,4 @@
-"""One leaf at a time, for any shape of conditions."""
+"""Gas exchange of one leaf at a time, for conditions of any shape."""
 
 from __future__ import annotations
 
@@ -6,15 +6,11 @@ import numpy as np
 import xarray as xr
 from numpy.typing import ArrayLike
 
-from cropstress.compiled import kernel
 from cropstress.crops import CropProfile, load_crop
 from cropstress.errors import Fault, InputError
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
-
-PHOTON_ABSORPTANCE = 0.85  # 1; von Caemmerer 2000 (from memory)
-INFRARED_ABSORPTANCE = 0.20  # 1; Campbell & Norman 1998 (from memory)
-PHOTONS_PER_JOULE = 4.57  # umol J-1; McCree 1972 (from memory)
+from cropstress.leaf.single import leaf_lanes, solve_lanes
 
 # What is physically possible: name, lowest, highest, unit.
 _RANGES = {
@@ -36,39 +32,6 @@ _UNITS = {
     "carboxylation": ("umol m-2 s-1", solve.CARBOXYLATION),
     "oxygenation": ("umol m-2 s-1", solve.OXYGENATION),
 }
-
-
-@kernel
-def _solve_many(leaves, lanes, oxygenation, answers):  # type: ignore[no-untyped-def]
-    """Solve any number of leaves, a multiple of LANES."""
-    block = np.empty((solve.LEAF_INPUTS, solve.LANES))
-    block_answers = np.empty((solve.LEAF_OUTPUTS, solve.LANES))
-    for first in range(0, lanes.shape[1], solve.LANES):
-        block[:, :] = lanes[:, first : first + solve.LANES]
-        solve.solve_leaves(leaves[0], block, oxygenation, block_answers)
-        answers[:, first : first + solve.LANES] = block_answers
-
-
-def solve_lanes(leaves: np.ndarray, lanes: np.ndarray, oxygenation: float = 1.0) -> np.ndarray:
-    """Solve leaves given as the rows of `solve`.
-
-    Parameters
-    ----------
-    leaves : record array (1,) of `C3_LEAF` or `C4_LEAF`
-    lanes : float64 array (LEAF_INPUTS, n)
-    oxygenation : float
-        1, or 0 for leaves without oxygenation.
-
-    Returns
-    -------
-    float64 array (LEAF_OUTPUTS, n)
-    """
-    count = lanes.shape[1]
-    padding = -count % solve.LANES
-    padded = np.ascontiguousarray(np.pad(lanes, ((0, 0), (0, padding)), mode="edge"))
-    answers = np.empty((solve.LEAF_OUTPUTS, count + padding))
-    _solve_many(leaves, padded, oxygenation, answers)
-    return answers[:, :count]
 
 
 def gas_exchange(
@@ -141,35 +104,6 @@ def gas_exchange(
         dims, without[solve.ASSIMILATION].reshape(shape), {"units": "umol m-2 s-1"},
     )  # fmt: skip
     return xr.Dataset(variables, attrs={"crop": profile.name, "pathway": profile.pathway})
-
-
-def leaf_lanes(
-    air_temperature: np.ndarray,
-    vapour_pressure: np.ndarray,
-    photons: np.ndarray,
-    co2: np.ndarray,
-    wind: np.ndarray,
-    pressure: np.ndarray,
-    net_longwave: np.ndarray,
-    growth_temperature: np.ndarray,
-) -> np.ndarray:
-    """Lay out single leaves as the rows of `solve`."""
-    logarithm = np.log(vapour_pressure / 0.6108)
-    dew_point = 237.3 * logarithm / (17.27 - logarithm)  # FAO-56 Eq. 3-11
-    lanes = np.empty((solve.LEAF_INPUTS, air_temperature.size))
-    lanes[solve.AIR_TEMPERATURE] = air_temperature
-    lanes[solve.VAPOUR_PRESSURE] = vapour_pressure
-    lanes[solve.DEW_POINT] = np.minimum(dew_point, air_temperature)
-    lanes[solve.NET_RADIATION] = (
-        photons / PHOTONS_PER_JOULE * (PHOTON_ABSORPTANCE + INFRARED_ABSORPTANCE) + net_longwave
-    )
-    lanes[solve.PHOTONS] = PHOTON_ABSORPTANCE * photons
-    lanes[solve.CAPACITY] = 1.0
-    lanes[solve.WIND] = wind
-    lanes[solve.PRESSURE] = pressure
-    lanes[solve.CO2] = co2
-    lanes[solve.GROWTH_TEMPERATURE] = growth_temperature
-    return lanes
 
 
 def _range_fault(name: str, values: np.ndarray) -> Fault | None:
