@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 import xarray as xr
 
+from cropstress.crops.profile_files import is_profile_path
 from cropstress.errors import Fault, InputError, fail, nearest
 from cropstress.places import Districts, read_area, read_districts, read_sowing
 from cropstress.region import Entry, Options, TimeAxis, compute_results, make_entry, make_plan, time_axis
@@ -22,6 +23,7 @@ from cropstress.report.summary import summarise, summary_text
 from cropstress.report.writer import write_report
 from cropstress.runfile import RunFile, load_runfile
 from cropstress.weather import Weather, mend_words, read_weather
+from cropstress.weather.open import find_files
 
 
 @dataclass
@@ -217,7 +219,7 @@ def run(
     remarks = job.remarks + mend_words(computed.counts)
     record = {
         "run_file": resolved,
-        "inputs": [file_record(file) for file in job.weather.paths],
+        "inputs": [file_record(file) for file in input_files(job)],
         "counts": computed.counts,
         "remarks": remarks,
         "seconds": round(time.monotonic() - clock, 1),
@@ -237,6 +239,23 @@ def run(
         progress=written,
     )  # fmt: skip
     return Outcome(folder, summary_text(summarise(results, job.areas)), remarks + report.remarks, results)
+
+
+def input_files(job: Job) -> list[Path]:
+    """Return every file the results depend on, each once: weather, elevation, places, profiles of one's own."""
+    run_file = job.run_file
+    computed = {entry.name for entry in job.entries}
+    named = [run_file.places.districts]
+    for entry in run_file.crops:
+        if entry.name not in computed:
+            continue
+        sowing, area = entry.sowing_spec(), entry.area_spec()
+        if isinstance(sowing, dict):
+            named.append(sowing.get("grid") or sowing.get("table"))
+        named.append(area["file"] if isinstance(area, dict) else area)
+        named.append(entry.profile if is_profile_path(entry.profile) else None)
+    places = [path for name in named if name is not None for path in find_files(name, run_file.base)[0]]
+    return list(dict.fromkeys([*job.weather.paths, *places]))
 
 
 def check(path: str | Path) -> list[str]:
