@@ -309,7 +309,7 @@ def _entry_lines(job: Job, entry: Entry) -> list[str]:
     crop = entry.profile
     computed = int((entry.grown & (entry.sowing >= 0).any(axis=0)).sum())
     lines = [
-        f"  {entry.name} ({entry.label}, {crop.pathway}): {computed} cells; sown {job.sowing_words[entry.name]}",
+        f"  {entry.name} ({entry.label}, {crop.pathway}): {computed} cells; {job.sowing_words[entry.name]}",
         f"    heat onset {crop.number('heat_onset'):g} degC (air, momentary), "
         f"hot day above {crop.number('hot_day_limit'):g} degC, "
         + (
@@ -319,7 +319,10 @@ def _entry_lines(job: Job, entry: Entry) -> list[str]:
         ),
     ]
     for season, year in enumerate(entry.years):
-        sown = entry.sowing[season][entry.sowing[season] >= 0]
+        sown = entry.sowing[season][(entry.sowing[season] >= 0) & entry.grown]
+        if not sown.size:
+            lines.append(f"    season {year}: sown in no cell where the crop is grown")
+            continue
         first, last = int(sown.min()), int(sown.max())
         end = last + sum(crop.days) - 1
         if entry.stages == "thermal_time":
@@ -343,5 +346,6 @@ def _setting_lines(resolved: dict[str, Any], prefix: str = "") -> list[str]:
             for number, part in enumerate(value, 1):
                 lines += _setting_lines(part, f"{prefix}{key}[{number}].")
         else:
-            lines.append(f"  {prefix}{key} = {value}")
+            shown = "not set" if value is None else str(value).lower() if isinstance(value, bool) else value
+            lines.append(f"  {prefix}{key} = {shown}")
     return lines
