@@ -78,8 +78,7 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
     job = prepare(path)
     latitude, longitude = cell_latitude_longitude(job.dataset)
     cell, distance = nearest_cell(latitude, longitude, place)
-    rows, columns = latitude.shape
-    row, column = divmod(cell, columns)
+    row, column = divmod(cell, latitude.shape[1])
     reach = _cell_size(latitude, longitude, row, column)
     if distance > reach:
         raise fail(
