@@ -11,7 +11,7 @@ import numpy as np
 
 from cropstress.compiled import inlined, kernel
 from cropstress.day import canopy, course
-from cropstress.leaf import solve
+from cropstress.leaf import held, solve
 from cropstress.leaf.air import dew_point
 from cropstress.leaf.responses import leaf_respiration
 
@@ -247,11 +247,11 @@ def crop_day_of_block(leaf, heat_onset, decline, single_leaf, cells, sky, crop_c
                 cool[solve.DEW_POINT, lane] = min(dew_point(humidity), air)
             solve.solve_leaves(leaf, cool, 1.0, cooled)
             solve.solve_leaves(leaf, cool, 0.0, cooled_open)
-            solve.gross_without_oxygenation(
+            held.gross_without_oxygenation(
                 leaf, lanes, cooled_open[solve.LEAF_TEMPERATURE], actual_open[solve.DEFICIT],
                 cooled_open[solve.ASSIMILATION], mixed_dry,
             )  # fmt: skip
-            solve.gross_without_oxygenation(
+            held.gross_without_oxygenation(
                 leaf, lanes, actual_open[solve.LEAF_TEMPERATURE], cooled_open[solve.DEFICIT],
                 actual_open[solve.ASSIMILATION], mixed_warm,
             )  # fmt: skip
