@@ -114,9 +114,9 @@ def make_result(
             f"{year}: {value:g}" for year, value in zip(entry.years, entry.co2, strict=True)
         ),
         "acclimation": (
-            "none" if growth is None
-            else "leaves used to the last 30 days" if options.acclimation
-            else f"leaves used to {growth:g} degC"
+            "not modelled for C4" if growth is None
+            else "to the last 30 days" if options.acclimation
+            else "off"
         ),
         "water": "assumes enough soil water",
         "last_day_of_data": axis.iso(axis.length - 1),
