@@ -131,12 +131,12 @@ def main() -> None:
     except typer.Abort:
         sys.exit(130)
     except Exception as error:
-        import click
-
-        if isinstance(error, click.ClickException):
-            error.show()
-            sys.exit(error.exit_code)
-        raise
+        # A wrong option or argument: click's own error, or that of the copy of click inside newer releases of typer.
+        show, exit_code = getattr(error, "show", None), getattr(error, "exit_code", None)
+        if show is None or exit_code is None:
+            raise
+        show()
+        sys.exit(exit_code)
     sys.exit(code if isinstance(code, int) else 0)
 
 
