@@ -13,7 +13,7 @@ import cropstress
 
 PACKAGE = Path(cropstress.__file__).parent
 
-#: What each part may import of the package beside itself; `report` reads the list of measures and nothing that computes.
+#: What each part may import of the package beside itself; `report` reads only the list of measures of `season`.
 BELOW = {
     "errors": set(),
     "compiled": set(),
