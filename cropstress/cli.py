@@ -125,10 +125,8 @@ def main() -> None:
     except InputError as error:
         print(error, file=sys.stderr)
         sys.exit(2)
-    except KeyboardInterrupt:
+    except (KeyboardInterrupt, typer.Abort):
         print("Interrupted; the same command starts again.", file=sys.stderr)
-        sys.exit(130)
-    except typer.Abort:
         sys.exit(130)
     except Exception as error:
         # A wrong option or argument: click's own error, or that of the copy of click inside newer releases of typer.
