@@ -126,8 +126,7 @@ def main() -> None:
         print(error, file=sys.stderr)
         sys.exit(2)
     except (KeyboardInterrupt, typer.Abort):
-        print("Interrupted; the same command starts again.", file=sys.stderr)
-        sys.exit(130)
+        code = 130  # which typer itself hands back for most interrupts
     except Exception as error:
         # A wrong option or argument: click's own error, or that of the copy of click inside newer releases of typer.
         show, exit_code = getattr(error, "show", None), getattr(error, "exit_code", None)
@@ -135,6 +134,8 @@ def main() -> None:
             raise
         show()
         sys.exit(exit_code)
+    if code == 130:
+        print("Interrupted; the same command starts again.", file=sys.stderr)
     sys.exit(code if isinstance(code, int) else 0)
 
 
