@@ -125,18 +125,17 @@ def main() -> None:
     except InputError as error:
         print(error, file=sys.stderr)
         sys.exit(2)
-    except KeyboardInterrupt:
-        print("Interrupted; the same command starts again.", file=sys.stderr)
-        sys.exit(130)
-    except typer.Abort:
-        sys.exit(130)
+    except (KeyboardInterrupt, typer.Abort):
+        code = 130  # which typer itself hands back for most interrupts
     except Exception as error:
-        import click
-
-        if isinstance(error, click.ClickException):
-            error.show()
-            sys.exit(error.exit_code)
-        raise
+        # A wrong option or argument: click's own error, or that of the copy of click inside newer releases of typer.
+        show, exit_code = getattr(error, "show", None), getattr(error, "exit_code", None)
+        if show is None or exit_code is None:
+            raise
+        show()
+        sys.exit(exit_code)
+    if code == 130:
+        print("Interrupted; the same command starts again.", file=sys.stderr)
     sys.exit(code if isinstance(code, int) else 0)
 
 

@@ -53,7 +53,9 @@ def leaf_curves(crop: str, folder: str | Path, photons: float = 1500.0, humidity
         notes=[f"{photons:g} umol m-2 s-1 of light, relative humidity {humidity:g} %, wind 2 m/s, 101.3 kPa"],
     )  # fmt: skip
     today = table[(table["co2"] == 421.0) & (table["air_temperature"] % 5 == 0)]
-    lines = [f"{profile.label}: air [degC], net assimilation and the same without oxygenation [umol m-2 s-1], 421 umol/mol"]
+    lines = [
+        f"{profile.label}: air [degC], net assimilation and the same without oxygenation [umol m-2 s-1], 421 umol/mol"
+    ]
     lines += [
         f"  {row.air_temperature:5.0f} {row.assimilation:8.1f} {row.assimilation_without_oxygenation:8.1f}"
         for row in today.itertuples()

@@ -92,7 +92,7 @@ def gas_exchange(
     if growth_temperature is None:
         growth_temperature = profile.number("growth_temperature") if profile.pathway == "C3" else 25.0
     growth = np.broadcast_to(np.asarray(growth_temperature, float), shape)
-    lanes = leaf_lanes(*(arrays[name].ravel() for name in given), growth.ravel())
+    lanes = leaf_lanes(*(array.ravel() for array in (*arrays.values(), growth)))
     record = leaf_record(profile)
     answers = solve_lanes(record, lanes)
     without = solve_lanes(record, lanes, 0.0)

@@ -73,8 +73,7 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
     job = prepare(path)
     latitude, longitude = cell_latitude_longitude(job.dataset)
     cell, distance = nearest_cell(latitude, longitude, place)
-    rows, columns = latitude.shape
-    row, column = divmod(cell, columns)
+    row, column = divmod(cell, latitude.shape[1])
     reach = _cell_size(latitude, longitude, row, column)
     if distance > reach:
         raise fail(
@@ -96,7 +95,8 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
         daily = np.concatenate(state.daily, axis=1)[0, :, :, 0]
         table = _table(daily, one, job.axis)
         window = _flowering_rows(state.totals[0], entry, table)
-        stem = f"{entry.name}-{abs(place[0]):g}{'N' if place[0] >= 0 else 'S'}-{abs(place[1]):g}{'E' if place[1] >= 0 else 'W'}"
+        north, east = "N" if place[0] >= 0 else "S", "E" if place[1] >= 0 else "W"
+        stem = f"{entry.name}-{abs(place[0]):g}{north}-{abs(place[1]):g}{east}"
         table_path = folder / f"{stem}.csv"
         with written_aside(table_path) as aside:
             table.to_csv(aside, index=False)
@@ -120,9 +120,10 @@ def _cell_size(latitude: np.ndarray, longitude: np.ndarray, row: int, column: in
     """Return the distance to the farthest neighbour of a cell, at least 25 km [km]."""
     rows, columns = latitude.shape
     largest = 25.0
+    here = (latitude[row, column], longitude[row, column])
     for r, c in ((row + 1, column), (row - 1, column), (row, column + 1), (row, column - 1)):
         if 0 <= r < rows and 0 <= c < columns:
-            _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], (latitude[row, column], longitude[row, column]))
+            _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], here)
             largest = max(largest, step)
     return largest
 

@@ -24,7 +24,9 @@ def make_plan(
     weather: xr.Dataset, tile: tuple[int, int] | None = None, block_days: int | None = None
 ) -> Plan:
     """Plan the blocks and tiles of a canonical weather dataset."""
-    chunks = [weather[name].chunks[0] for name in weather.data_vars if weather[name].chunks and weather[name].ndim == 3]
+    chunks = [
+        variable.chunks[0] for variable in weather.data_vars.values() if variable.chunks and variable.ndim == 3
+    ]
     rows, columns = weather["tmax"].shape[1:]
     return Plan(plan_blocks(weather.sizes["time"], chunks, block_days), plan_tiles(rows, columns, tile))
 

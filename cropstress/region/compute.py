@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
+from typing import Any
 
 import dask
 import numpy as np
@@ -245,7 +246,7 @@ def compute(
                 users.append(key)
         graph["done", k] = (_done, *users)
     last = len(plan.blocks) - 1
-    wanted = [[("tile", e, t, last) for t in range(len(plan.tiles))] for e in range(len(entries))]
+    wanted: list[Any] = [[("tile", e, t, last) for t in range(len(plan.tiles))] for e in range(len(entries))]
     states = dask.threaded.get(graph, wanted, num_workers=threads)
     return Computed(
         {entry.name: list(states[e]) for e, entry in enumerate(entries)}, counts, axis.length

@@ -206,7 +206,7 @@ def _coordinates(entry: Entry, totals: np.ndarray, axis: TimeAxis, weather: xr.D
         coords[name] = float(entry.season[name][0])
     if entry.season["flowers"][0]:
         coords["flowering_limit"] = float(entry.season["flowering_limit"][0])
-    for name, coordinate in weather.coords.items():
-        if "time" not in coordinate.dims and name not in coords:
-            coords[str(name)] = coordinate.variable
+    for key, coordinate in weather.coords.items():
+        if "time" not in coordinate.dims and key not in coords:
+            coords[str(key)] = coordinate.variable
     return coords

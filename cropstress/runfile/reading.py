@@ -167,9 +167,9 @@ _TABLES: dict[str, type[Table]] = {
     "output": Output,
     "compute": Compute,
 }
-_TABLE_OF = {key: f"[{name}]" for name, table in _TABLES.items() for key in table.model_fields} | {
-    key: "[[crops]]" for key in ("profile", "sowing", "area", "stages", "changes", "label")
-}
+_TABLE_OF = {key: f"[{name}]" for name, table in _TABLES.items() for key in table.model_fields} | dict.fromkeys(
+    ("profile", "sowing", "area", "stages", "changes", "label"), "[[crops]]"
+)
 
 
 def _keys_at(location: Location) -> list[str]:
