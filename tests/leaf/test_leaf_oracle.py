@@ -238,6 +238,13 @@ def test_net_rate_and_leaf_temperature(comparison: Comparison) -> None:
     assert comparison.temperature <= 1e-3
 
 
+def test_coolest_solution_in_any_weather(comparison: Comparison) -> None:
+    """Of leaves with several solutions nine in ten take the coolest; few draws hold too few of them to tell."""
+    assert comparison.neither == 0
+    if comparison.several >= 30:
+        assert comparison.share_of_lowest >= 0.9
+
+
 def test_carboxylation_oxygenation_and_respiration(comparison: Comparison) -> None:
     """The parts of the net rate follow their own equations, not only their sum."""
     assert comparison.carboxylation <= 2e-3
