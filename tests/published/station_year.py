@@ -13,6 +13,7 @@ from pathlib import Path
 
 import numpy as np
 import pandas as pd
+import pvlib
 import xarray as xr
 
 from cropstress import open_weather
@@ -43,8 +44,6 @@ def saturation(temperature: np.ndarray) -> np.ndarray:
 
 def read_station() -> Station:
     """Read the file; an hour is a row of it, as it stands there."""
-    import pvlib
-
     path = Path(pvlib.__file__).parent / "data" / "723170TYA.CSV"
     table, about = pvlib.iotools.read_tmy3(path, coerce_year=YEAR, map_variables=True)
     number = np.arange(len(table))

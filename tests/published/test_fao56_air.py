@@ -7,8 +7,11 @@ from __future__ import annotations
 
 import math
 
+import metpy.calc
 import numpy as np
 import pytest
+import xarray as xr
+from metpy.units import units
 
 from cropstress.day import course
 from cropstress.leaf import air, responses
@@ -33,10 +36,8 @@ def test_saturation_pressure_table(floor) -> None:
 @pytest.mark.parametrize("floor", [responses.saturation_pressure, course.saturation], ids=["leaf", "day"])
 def test_saturation_pressure_against_metpy(floor) -> None:
     """Another formula (MetPy): within 0.5 % from 0 to 50 degC."""
-    calc = pytest.importorskip("metpy.calc")
-    units = pytest.importorskip("metpy.units").units
     temperature = np.linspace(0.0, 50.0, 101)
-    other = calc.saturation_vapor_pressure(units.Quantity(temperature, "degC")).to("kPa").magnitude
+    other = metpy.calc.saturation_vapor_pressure(units.Quantity(temperature, "degC")).to("kPa").magnitude
     np.testing.assert_allclose([floor(each) for each in temperature], other, rtol=5e-3)
 
 
@@ -50,8 +51,6 @@ def test_dew_point(pressure: float) -> None:
 
 def test_latitudes_of_example_7(tmp_path) -> None:
     """FAO-56 Example 7, published: 13 deg 44 min N is 0.240 rad, 22 deg 54 min S is -0.400 rad."""
-    import xarray as xr
-
     coords = {
         "time": ("time", [0.0, 1.0], {"units": "days since 2021-06-01"}),
         "lat": ("lat", [-(22 + 54 / 60), 13 + 44 / 60], {"units": "degrees_north", "standard_name": "latitude"}),

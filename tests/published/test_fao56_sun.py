@@ -9,7 +9,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
+import pandas as pd
 import pytest
+from pvlib import solarposition
 
 from cropstress.day import course
 from cropstress.weather import extraterrestrial_radiation
@@ -113,13 +115,11 @@ def test_sun_loosely_against_pvlib(latitude: float) -> None:
 
     The declination of FAO-56 is up to 1 degree off in October, and its daylight knows no refraction.
     """
-    pandas = pytest.importorskip("pandas")
-    solar = pytest.importorskip("pvlib.solarposition")
     days = np.arange(1, 366)
-    midnights = pandas.date_range("2021-01-01", periods=365, freq="D", tz="UTC")
-    events = solar.sun_rise_set_transit_spa(midnights, latitude, 0.0)
+    midnights = pd.date_range("2021-01-01", periods=365, freq="D", tz="UTC")
+    events = solarposition.sun_rise_set_transit_spa(midnights, latitude, 0.0)
     length = (events["sunset"] - events["sunrise"]).dt.total_seconds().to_numpy() / 3600.0 % 24.0
-    noon = solar.get_solarposition(pandas.DatetimeIndex(events["transit"]), latitude, 0.0)["elevation"].to_numpy()
+    noon = solarposition.get_solarposition(pd.DatetimeIndex(events["transit"]), latitude, 0.0)["elevation"].to_numpy()
     ours = [course.daylight_hours(sunset(latitude, day)) for day in days]
     sines = [course.sine_of_elevation(math.radians(latitude), course.declination(float(day)), 12.0) for day in days]
     assert np.abs(ours - length).max() <= 0.5

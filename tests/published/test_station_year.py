@@ -22,7 +22,6 @@ SOWING = {"soybean": "05-15", "wheat": "02-01", "maize": "04-15"}
 @pytest.fixture(scope="module")
 def station() -> Station:
     """Return the station."""
-    pytest.importorskip("pvlib")
     return read_station()
 
 
