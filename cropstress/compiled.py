@@ -32,6 +32,7 @@ from numba.extending import intrinsic
 FAST_MATH = {"nnan", "ninf", "nsz", "arcp", "contract"}
 
 LANES = 256  # leaves that a loop takes together: a multiple of every vector width times unrolling
+ROW = LANES + 8  # a power of two would put all rows into the same few places of the processor's cache
 
 _PACKAGE = Path(__file__).parent
 
@@ -104,12 +105,12 @@ def _cached(function: Callable[..., Any], fast_math: set[str] | bool) -> Any:
 
 @inlined
 def at(row: int, lane: int) -> int:
-    """Return where a lane of a row stands in a workspace of LANES columns.
+    """Return where a lane of a row stands in a workspace of rows of ROW numbers.
 
     Workspaces are flat, so that the distance between two rows is known when a loop is compiled; unsigned,
     so that no index could mean a place counted from the end.
     """
-    return np.uint64(row * LANES + lane)
+    return np.uint64(row * ROW + lane)
 
 
 # 1.5 x 2^52 brings a whole number into the lowest bits of the significand; 1023 is the bias of the exponent.

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from cropstress.compiled import LANES, at, kernel
+from cropstress.compiled import LANES, ROW, at, kernel
 from cropstress.leaf import solve
 from cropstress.leaf.air import VAPOUR_TO_CO2_BOUNDARY, vapour_conductance
 from cropstress.leaf.pathway import improved_rates, leaf_state, net_rate, state_found, state_kept
@@ -36,8 +36,8 @@ def gross_without_oxygenation(leaf, lanes, temperature, deficit, start, answers)
     answers : float64 array (LANES,)
         Written: net rate plus respiration [umol m-2 s-1].
     """
-    space = np.empty(solve.LEAF_INPUTS * LANES)
-    held = np.empty(_WORKSPACE * LANES)
+    space = np.empty(solve.LEAF_INPUTS * ROW)
+    held = np.empty(_WORKSPACE * ROW)
     for row in range(solve.LEAF_INPUTS):
         for i in range(LANES):
             space[at(row, i)] = lanes[row, i]

@@ -16,7 +16,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from cropstress.compiled import LANES, at, exponential, inlined, kernel, lane_loop
+from cropstress.compiled import LANES, ROW, at, exponential, inlined, kernel, lane_loop
 from cropstress.leaf.air import (
     AIR_HEAT_CAPACITY,
     EVAPORATION_HEAT,
@@ -323,14 +323,13 @@ def gather(space, answers, first, most, few, places):  # type: ignore[no-untyped
     while lane < LANES and count < most:
         if answers[UNSETTLED, lane] > 0.0:
             places[count] = lane
-            for row in range(_STATE):
-                few[at(row, count)] = space[at(row, lane)]
             count += 1
         lane += 1
     width = (count + FEW_LANES - 1) // FEW_LANES * FEW_LANES
-    for extra in range(count, width):
-        for row in range(_STATE):
-            few[at(row, extra)] = few[at(row, count - 1)]
+    places[count:width] = places[count - 1]
+    for row in range(_STATE):
+        for k in range(width):
+            few[at(row, k)] = space[at(row, places[k])]
     return count, width, lane
 
 
@@ -392,8 +391,8 @@ def solve_leaves(leaf, lanes, oxygenation, answers):  # type: ignore[no-untyped-
     answers : float64 array (LEAF_OUTPUTS, LANES)
         Written.
     """
-    space = np.empty(_WORKSPACE * LANES)
-    results = np.empty(LEAF_OUTPUTS * LANES)
+    space = np.empty(_WORKSPACE * ROW)
+    results = np.empty(LEAF_OUTPUTS * ROW)
     set_out(leaf, lanes, LANES, space)
     respond(leaf, LANES, oxygenation, space)
     start_rates(leaf, LANES, space)
@@ -403,7 +402,7 @@ def solve_leaves(leaf, lanes, oxygenation, answers):  # type: ignore[no-untyped-
     unsettled = written_out(leaf, LANES, space, results, answers)
     if unsettled == 0:
         return
-    few = np.empty(_WORKSPACE * LANES)
+    few = np.empty(_WORKSPACE * ROW)
     few_answers = np.empty((LEAF_OUTPUTS, LANES))
     places = np.empty(LANES, dtype=np.int64)
     count, width, _ = gather(space, answers, 0, LANES, few, places)

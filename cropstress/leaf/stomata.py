@@ -120,10 +120,10 @@ def hyperbola(
 def newton_on_hyperbola(limit: Any, rate: float) -> float:
     """Return a net rate nearer to where demand and supply of one limit meet.
 
-    Stomata that stay open at rest make the supply steep near no uptake, with a pole just below it: a leaf that
-    takes up CO2 is kept on its side, where steps from below never overshoot.
+    Nearly shut stomata make the supply steep near no uptake, with a pole on the other side: a leaf is kept on its
+    own side, where steps from the side of zero never overshoot.
     """
-    rate = max(rate, 0.0) if limit.takes_up else rate
+    rate = max(rate, 0.0) if limit.takes_up else min(rate, 0.0)
     above = limit.above_0 + rate * (limit.above_1 + rate * limit.square)
     below = limit.below_0 + rate * (limit.below_1 + rate * limit.square)
     above_slope = limit.above_1 + 2.0 * rate * limit.square
@@ -131,7 +131,7 @@ def newton_on_hyperbola(limit: Any, rate: float) -> float:
     missing = limit.capacity * above - (limit.respiration + rate) * below
     fall = below * below - limit.capacity * (above_slope * below - above * below_slope)
     further = rate + below * missing / fall
-    return max(further, _SMALLEST_SHARE * rate) if limit.takes_up else further
+    return max(further, _SMALLEST_SHARE * rate) if limit.takes_up else min(further, 0.0)
 
 
 @inlined
