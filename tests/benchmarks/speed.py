@@ -19,7 +19,7 @@ from numpy_leaf import solve_with_numpy
 import cropstress as cs
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
-from cropstress.leaf.single import leaf_lanes, solve_lanes
+from cropstress.leaf.single import in_blocks, leaf_lanes, solve_blocks, solve_lanes
 
 LEAVES = 80 * solve.LANES
 REPEATS = 7
@@ -63,14 +63,16 @@ def compare(crop: str, mild: bool) -> None:
     with np.errstate(all="ignore"):
         net, temperature = solve_with_numpy(record, lanes)
 
-        def in_blocks(size: int) -> None:
+        def plainly(size: int) -> None:
             for first in range(0, LEAVES, size):
                 solve_with_numpy(record, lanes[:, first : first + size])
 
+        blocks = in_blocks(lanes)
+        answers = np.empty((len(blocks), solve.LEAF_OUTPUTS, solve.LANES))
         compiled, plain = [], []
         for _ in range(REPEATS):
-            compiled.append(seconds(lambda: solve_lanes(record, lanes)))
-            plain += [seconds(lambda size=size: in_blocks(size)) for size in NUMPY_BLOCKS]  # type: ignore[misc]
+            compiled.append(seconds(lambda: solve_blocks(record, blocks, 1.0, answers)))
+            plain += [seconds(lambda size=size: plainly(size)) for size in NUMPY_BLOCKS]  # type: ignore[misc]
     fast, slow = min(compiled) / LEAVES * 1e9, min(plain) / LEAVES * 1e9
     # A leaf with several solutions may be solved for another of them; the oracle of the tests looks at those.
     apart = np.abs(net - solved[solve.ASSIMILATION])
