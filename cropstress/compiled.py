@@ -104,7 +104,7 @@ def _cached(function: Callable[..., Any], fast_math: set[str] | bool) -> Any:
 
 
 @inlined
-def at(row: int, lane: int) -> int:
+def at(row: int, lane: int) -> np.uint64:
     """Return where a lane of a row stands in a workspace of rows of ROW numbers.
 
     Workspaces are flat, so that the distance between two rows is known when a loop is compiled; unsigned,

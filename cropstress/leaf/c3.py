@@ -86,8 +86,9 @@ def c3_kept(leaf: Any, space: Any, row: int, i: int, state: C3State) -> None:
 def c3_found(leaf: Any, space: Any, row: int, i: int) -> C3State:
     """Read a state from six rows of a workspace."""
     return C3State(
-        space[at(row, i)], space[at(row + 1, i)], space[at(row + 2, i)], space[at(row + 3, i)], space[at(row + 4, i)], space[at(row + 5, i)]
-    )
+        space[at(row, i)], space[at(row + 1, i)], space[at(row + 2, i)], space[at(row + 3, i)],
+        space[at(row + 4, i)], space[at(row + 5, i)],
+    )  # fmt: skip
 
 
 @inlined
@@ -133,7 +134,9 @@ def c3_net_rate(leaf: Any, state: C3State, enzyme: float, light: float, co2_at_r
 
 
 @inlined
-def c3_carboxylation(leaf: Any, state: C3State, co2: float, assimilation: float, pressure: float) -> tuple[float, float]:
+def c3_carboxylation(
+    leaf: Any, state: C3State, co2: float, assimilation: float, pressure: float
+) -> tuple[float, float]:
     """Return carboxylation Vc and oxygenation Vo = 2 (compensation point / CO2) Vc."""
     enzyme = state.carboxylation * co2 / (co2 + state.effective_michaelis)
     light = state.electron_transport * co2 / (4.0 * co2 + 8.0 * state.compensation_point)

@@ -202,7 +202,9 @@ def c4_net_rate(leaf: Any, state: C4State, enzyme: float, light: float, co2_at_r
 
 
 @inlined
-def c4_carboxylation(leaf: Any, state: C4State, co2: float, assimilation: float, pressure: float) -> tuple[float, float]:
+def c4_carboxylation(
+    leaf: Any, state: C4State, co2: float, assimilation: float, pressure: float
+) -> tuple[float, float]:
     """Return carboxylation Vc and oxygenation Vo in the bundle sheath, whose gases follow from A."""
     mesophyll = co2 * _MICROBAR_PER_MOLE_FRACTION * pressure
     enzyme_rate, light_rate = c4_rates(leaf, state, co2, pressure)
@@ -212,7 +214,8 @@ def c4_carboxylation(leaf: Any, state: C4State, co2: float, assimilation: float,
     limited_by_light = light_rate < enzyme_rate
     pumped = 0.5 * leaf.electron_partition * state.electron_transport if limited_by_light else pep
     conductance = leaf.bundle_sheath_conductance
-    co2_inside = mesophyll + (pumped - assimilation - leaf.mesophyll_respiration_share * state.respiration) / conductance
+    mesophyll_respiration = leaf.mesophyll_respiration_share * state.respiration
+    co2_inside = mesophyll + (pumped - assimilation - mesophyll_respiration) / conductance
     oxygen_inside = (
         leaf.bundle_sheath_oxygen_share * assimilation / (leaf.oxygen_leak_ratio * conductance)
         + mesophyll_oxygen(leaf, pressure)

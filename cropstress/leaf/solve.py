@@ -173,8 +173,9 @@ def respond(leaf, width, oxygenation, space):  # type: ignore[no-untyped-def]
     """Work out what leaf temperature makes of the leaves: their state, deficit and stomata."""
     for i in range(width):
         around = Surroundings(
-            space[at(PHOTONS, i)], space[at(CAPACITY, i)], space[at(GROWTH_TEMPERATURE, i)], space[at(_CARBOXYLATION_25, i)],
-            space[at(_ELECTRON_TRANSPORT_25, i)], space[at(_INVERSE_PRESSURE, i)], oxygenation,
+            space[at(PHOTONS, i)], space[at(CAPACITY, i)], space[at(GROWTH_TEMPERATURE, i)],
+            space[at(_CARBOXYLATION_25, i)], space[at(_ELECTRON_TRANSPORT_25, i)], space[at(_INVERSE_PRESSURE, i)],
+            oxygenation,
         )  # fmt: skip
         temperature = space[at(_TEMPERATURE, i)]
         step, inverse = temperature_terms(temperature)
@@ -251,7 +252,8 @@ def first_step(leaf, width, space):  # type: ignore[no-untyped-def]
 def secant_step(leaf, width, space):  # type: ignore[no-untyped-def]
     """Improve the temperatures by the slope from the step before; return how many leaves still move."""
     for i in range(width):
-        here, before, coolest, warmest = space[at(_TEMPERATURE, i)], space[at(_BEFORE, i)], space[at(_LOWER, i)], space[at(_UPPER, i)]
+        here, before = space[at(_TEMPERATURE, i)], space[at(_BEFORE, i)]
+        coolest, warmest = space[at(_LOWER, i)], space[at(_UPPER, i)]
         rise_before, run_before, settled = space[at(_RISE, i)], space[at(_RUN, i)], space[at(_SETTLED, i)]
         conducted = AIR_HEAT_CAPACITY * space[at(_SENSIBLE, i)]
         surplus, _ = energy_of(leaf, space, i)
@@ -286,7 +288,8 @@ def written_out(leaf, width, space, results, answers):  # type: ignore[no-untype
     for i in range(width):
         state = state_found(leaf, space, _STATE, i)
         stomata = stomata_of(leaf, space, i)
-        solved = net_rate(leaf, state, space[at(_ENZYME, i)], space[at(_LIGHT, i)], co2_at_rest(stomata, state.respiration))
+        at_rest = co2_at_rest(stomata, state.respiration)
+        solved = net_rate(leaf, state, space[at(_ENZYME, i)], space[at(_LIGHT, i)], at_rest)
         inside, _ = supply(stomata, solved)
         fixed, oxygenated = carboxylation(leaf, state, inside, solved, space[at(PRESSURE, i)])
         rate = fixed - 0.5 * oxygenated - state.respiration

@@ -51,8 +51,8 @@ def _electron_transport(leaf: Leaf, lanes: Array, step: Array) -> Array:
 
 
 def _carboxylation_capacity(leaf: Leaf, lanes: Array, step: Array) -> Array:
-    entropy = leaf["carboxylation_entropy_intercept"]
-    entropy = entropy + leaf["carboxylation_entropy_slope"] * lanes[solve.GROWTH_TEMPERATURE]
+    growth = lanes[solve.GROWTH_TEMPERATURE]
+    entropy = leaf["carboxylation_entropy_intercept"] + leaf["carboxylation_entropy_slope"] * growth
     shape = _peaked(leaf["carboxylation_activation"], leaf["carboxylation_deactivation"], entropy, step)
     return lanes[solve.CAPACITY] * leaf["carboxylation_capacity"] * shape
 
@@ -99,8 +99,8 @@ def _c4_demands(leaf: Leaf, lanes: Array, temperature: Array, oxygenation: float
     pep_michaelis = leaf["pep_michaelis"] * _arrhenius(leaf["pep_michaelis_activation"], step)
     michaelis = leaf["michaelis_co2"] * _arrhenius(leaf["michaelis_co2_activation"], step)
     per_oxygen = oxygenation / (leaf["michaelis_o2"] * _arrhenius(leaf["michaelis_o2_activation"], step))
-    star = oxygenation * leaf["half_inverse_specificity"]
-    star = star * _arrhenius(leaf["half_inverse_specificity_activation"], step)
+    warmed = _arrhenius(leaf["half_inverse_specificity_activation"], step)
+    star = oxygenation * leaf["half_inverse_specificity"] * warmed
     electrons = _electron_transport(leaf, lanes, step)
     to_pressure = 0.01 * lanes[solve.PRESSURE]
     oxygen = 1000.0 * leaf["oxygen"] * to_pressure

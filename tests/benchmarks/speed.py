@@ -78,15 +78,10 @@ def compare(crop: str, mild: bool) -> None:
     apart = np.abs(net - solved[solve.ASSIMILATION])
     same = np.abs(temperature - solved[solve.LEAF_TEMPERATURE]) < 0.1
     print(
-        f"{leaf_pathway(crop)} {'mild' if mild else 'full'} range: {fast:5.0f} ns a leaf solution, NumPy {slow:5.0f} ns, "
-        f"ratio {slow / fast:4.1f}; they differ by {apart[same].max():.0e} umol m-2 s-1 at most "
+        f"{cs.load_crop(crop).pathway} {'mild' if mild else 'full'} range: {fast:5.0f} ns a leaf solution, "
+        f"NumPy {slow:5.0f} ns, ratio {slow / fast:4.1f}; they differ by {apart[same].max():.0e} umol m-2 s-1 at most "
         f"({(~same).sum()} of {LEAVES} leaves in another solution)"
     )
-
-
-def leaf_pathway(crop: str) -> str:
-    """Return C3 or C4."""
-    return cs.load_crop(crop).pathway
 
 
 def whole_engine(crop: str, hot: bool, folder: Path) -> None:
@@ -106,7 +101,11 @@ def whole_engine(crop: str, hot: bool, folder: Path) -> None:
     }  # fmt: skip
     grid = xr.Dataset(
         {
-            name: (("time", "lat", "lon"), values, {"standard_name": standard_name, "units": unit, "cell_methods": method})
+            name: (
+                ("time", "lat", "lon"),
+                values,
+                {"standard_name": standard_name, "units": unit, "cell_methods": method},
+            )
             for name, (values, standard_name, unit, method) in fields.items()
         },
         {
@@ -124,7 +123,8 @@ def whole_engine(crop: str, hot: bool, folder: Path) -> None:
 
     season()
     fastest = min(seconds(season) for _ in range(3))
-    print(f"{crop}, {'every day above' if hot else 'no day above'} the onset: {fastest / (days * rows * columns) * 1e6:5.1f} us a cell, day and crop")
+    cost = fastest / (days * rows * columns) * 1e6
+    print(f"{crop}, {'every' if hot else 'no'} day above the onset: {cost:5.1f} us a cell, day and crop")
 
 
 if __name__ == "__main__":
