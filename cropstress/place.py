@@ -37,6 +37,8 @@ _COLUMNS = {
     "growth_temperature": at.DAILY_GROWTH_TEMPERATURE,
 }
 
+_NO_LEAF = -1e29  # degC: a day without leaf area has no leaf temperature
+
 
 def nearest_cell(latitude: np.ndarray, longitude: np.ndarray, wanted: tuple[float, float]) -> tuple[int, float]:
     """Return the number of the nearest cell centre and its distance [km] on a sphere of 6371 km."""
@@ -93,7 +95,7 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
         plan = Plan(make_plan(one).blocks, [(0, 1, 0, 1)])
         state = compute(one, [single], plan, job.axis, threads=1, keep_daily=True).tiles[entry.name][0]
         daily = np.concatenate(state.daily, axis=1)[0, :, :, 0]
-        table = _table(daily, one, job.axis)
+        table = _table(daily, one, job.axis, entry.profile.pathway)
         window = _flowering_rows(state.totals[0], entry, table)
         north, east = "N" if place[0] >= 0 else "S", "E" if place[1] >= 0 else "W"
         stem = f"{entry.name}-{abs(place[0]):g}{north}-{abs(place[1]):g}{east}"
@@ -133,7 +135,7 @@ def _at_cell(entry: Entry, cell: int) -> Entry:
     return replace(entry, sowing=entry.sowing[:, cell : cell + 1], grown=entry.grown[cell : cell + 1])
 
 
-def _table(daily: np.ndarray, one: xr.Dataset, axis: TimeAxis) -> pd.DataFrame:
+def _table(daily: np.ndarray, one: xr.Dataset, axis: TimeAxis, pathway: str) -> pd.DataFrame:
     """Return the days of the seasons, a row a day."""
     growing = np.isfinite(daily[:, at.DAILY_STAGE])
     days = np.nonzero(growing)[0]
@@ -143,9 +145,13 @@ def _table(daily: np.ndarray, one: xr.Dataset, axis: TimeAxis) -> pd.DataFrame:
     }
     for name in ("tmax", "tmin", "vapour_pressure", "radiation"):
         if name in one:
-            columns[name] = np.asarray(one[name].values, dtype=float).ravel()[days]
+            # Six decimals: what conversion of units adds behind them is no measurement.
+            columns[name] = np.round(np.asarray(one[name].values, dtype=float).ravel()[days], 6)
     for name, row in _COLUMNS.items():
-        columns[name] = daily[days, row]
+        if name == "growth_temperature" and pathway != "C3":
+            continue  # C4 leaves are not acclimated
+        values = daily[days, row]
+        columns[name] = np.where(values > _NO_LEAF, values, np.nan) if name == "highest_leaf_temperature" else values
     return pd.DataFrame(columns)
 
 

@@ -14,12 +14,13 @@ from pathlib import Path
 
 import numpy as np
 import xarray as xr
-from numpy_leaf import solve_with_numpy
 
 import cropstress as cs
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
 from cropstress.leaf.single import in_blocks, leaf_lanes, solve_blocks, solve_lanes
+
+from numpy_leaf import solve_with_numpy
 
 LEAVES = 80 * solve.LANES
 REPEATS = 7

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import numpy as np
-from oracle import Conditions, LeafOracle
 
 from cropstress.crops import load_crop
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
 from cropstress.leaf.single import leaf_lanes, solve_lanes
+
+from oracle import Conditions, LeafOracle
 
 
 def test_net_rate_just_below_zero_in_hot_moist_air() -> None:

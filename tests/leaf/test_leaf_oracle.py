@@ -11,12 +11,13 @@ from dataclasses import dataclass, field
 
 import numpy as np
 import pytest
-from oracle import Conditions, LeafOracle, Solutions, saturation
 
 from cropstress.crops import CropProfile, available_crops, load_crop
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
 from cropstress.leaf.single import leaf_lanes, solve_lanes
+
+from oracle import Conditions, LeafOracle, Solutions, saturation
 
 STATES = int(os.environ.get("CROPSTRESS_ORACLE_STATES", "20000"))
 LEAVES_OF_ONE_PROFILE = 500

@@ -12,6 +12,7 @@ from cropstress.crops import CropProfile
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
 from cropstress.leaf.single import solve_lanes
+
 from station_year import Station, saturation, solar_hours, sun_of_day
 
 CO2 = 400.0  # umol mol-1

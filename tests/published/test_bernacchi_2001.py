@@ -6,10 +6,11 @@ from math import exp
 
 import numpy as np
 import pytest
-from published_leaf import changed, held
 
 from cropstress.crops import CropProfile
 from cropstress.leaf import solve
+
+from published_leaf import changed, held
 
 SOURCE = "Bernacchi et al. 2001, Table 1"
 R = 0.008314  # kJ mol-1 K-1, as there

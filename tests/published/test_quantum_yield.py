@@ -10,10 +10,11 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from published_leaf import beyond_range
 
 from cropstress import gas_exchange
 from cropstress.crops import CropProfile, available_crops, load_crop
+
+from published_leaf import beyond_range
 
 DIM = np.array([40.0, 100.0])  # absorbed photons [umol m-2 s-1] the slope is taken between; chosen here
 CROPS = [load_crop(name) for name in available_crops()]

@@ -8,12 +8,13 @@ from __future__ import annotations
 
 import datetime
 
-import hourly_season
 import pytest
 import xarray as xr
 
 from cropstress import assess
 from cropstress.crops import load_crop
+
+import hourly_season
 from station_year import YEAR, Station, centred, daily_weather, made_again, read_station
 
 SOWING = {"soybean": "05-15", "wheat": "02-01", "maize": "04-15"}

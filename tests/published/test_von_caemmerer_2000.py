@@ -8,11 +8,12 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from published_leaf import changed, held
 from scipy.optimize import brentq
 
 from cropstress.crops import CropProfile
 from cropstress.leaf import solve
+
+from published_leaf import changed, held
 
 SOURCE = "von Caemmerer 2000, Table 4.1"
 # von Caemmerer 2000, Table 4.1, from memory; rates umol m-2 s-1, pressures ubar.

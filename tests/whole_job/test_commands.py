@@ -71,7 +71,7 @@ def test_leaf_writes_a_table_and_a_figure(tmp_path: Path) -> None:
 def test_a_traced_place_is_its_cell_of_the_map(results: dict[str, xr.Dataset], tmp_path: Path) -> None:
     """Exactly: the days of the trace, added up in their order, are the season's sums."""
     written = trace(RUN_FILE, PLACE, tmp_path)
-    tables = {path.name.split("-")[0]: pd.read_csv(path) for path in written if path.suffix == ".csv"}
+    tables = {path.name.split("-")[0]: pd.read_csv(path, float_precision="round_trip") for path in written if path.suffix == ".csv"}
     assert set(tables) == {"maize", "wheat"}
     for crop, table in tables.items():
         cell = results[crop].sel(lat=PLACE[0], lon=PLACE[1], method="nearest").isel(season=0)
