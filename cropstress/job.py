@@ -295,7 +295,7 @@ def check(path: str | Path) -> list[str]:
         low, high = variable.sample_range
         lines.append(
             f"  {variable.canonical}: {variable.name} in {', '.join(variable.files)} ({variable.reason}); "
-            f"unit {variable.unit}, {variable.conversion}; {low:.4g} to {high:.4g} on the days looked at"
+            f"unit {variable.conversion}; {low:.4g} to {high:.4g} on the days looked at"
         )
     rows, columns = job.dataset["tmax"].shape[1:]
     lines += [
