@@ -45,7 +45,8 @@ def run(
     ) as bar:  # fmt: skip
         tasks: dict[str, int] = {}
         bar.console.print(
-            "Opening the grids; the first run after an installation also compiles the model, for about a minute.", soft_wrap=True
+            "Opening the grids; the first run after an installation also compiles the model (about a minute).",
+            soft_wrap=True,
         )
 
         def progress(what: str, share: float) -> None:

@@ -17,6 +17,7 @@ from cropstress.region.compute import compute
 from cropstress.region.plan import Plan
 from cropstress.report.curves import trace_figure
 from cropstress.report.writing import written_aside
+from cropstress.run_faults import weather_told
 from cropstress.season import layout as at
 from cropstress.season.measures import STAGES
 from cropstress.weather import cell_latitude_longitude
@@ -93,7 +94,8 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
         if not (single.grown & (single.sowing >= 0).any(axis=0)).any():
             continue
         plan = Plan(make_plan(one).blocks, [(0, 1, 0, 1)])
-        state = compute(one, [single], plan, job.axis, threads=1, keep_daily=True).tiles[entry.name][0]
+        with weather_told(job.weather, job.run_file.base):
+            state = compute(one, [single], plan, job.axis, threads=1, keep_daily=True).tiles[entry.name][0]
         daily = np.concatenate(state.daily, axis=1)[0, :, :, 0]
         table = _table(daily, one, job.axis, entry.profile.pathway)
         window = _flowering_rows(state.totals[0], entry, table)

@@ -68,10 +68,17 @@ def test_leaf_writes_a_table_and_a_figure(tmp_path: Path) -> None:
     assert "photorespiration" in done.stdout
 
 
+def read_exactly(path: Path) -> pd.DataFrame:
+    """Read a table without rounding a number: the quick reading of pandas may be off in the last digit."""
+    table = pd.read_csv(path, dtype=str, keep_default_na=False)
+    numbers = [name for name in table.columns if name not in ("date", "stage")]
+    return table.assign(**{name: [float(text or "nan") for text in table[name]] for name in numbers})
+
+
 def test_a_traced_place_is_its_cell_of_the_map(results: dict[str, xr.Dataset], tmp_path: Path) -> None:
     """Exactly: the days of the trace, added up in their order, are the season's sums."""
     written = trace(RUN_FILE, PLACE, tmp_path)
-    tables = {path.name.split("-")[0]: pd.read_csv(path, float_precision="round_trip") for path in written if path.suffix == ".csv"}
+    tables = {path.name.split("-")[0]: read_exactly(path) for path in written if path.suffix == ".csv"}
     assert set(tables) == {"maize", "wheat"}
     for crop, table in tables.items():
         cell = results[crop].sel(lat=PLACE[0], lon=PLACE[1], method="nearest").isel(season=0)
