@@ -30,7 +30,7 @@ def check(path: str | Path) -> list[str]:
         looked_at = "" if variable.canonical == "elevation" else " on the days looked at"
         lines.append(
             f"  {variable.canonical}: {variable.name} in {', '.join(variable.files)} ({variable.reason}); "
-            f"unit {variable.unit}, {variable.conversion}; {low:.4g} to {high:.4g}{looked_at}"
+            f"unit {variable.conversion}; {low:.4g} to {high:.4g}{looked_at}"
         )
     rows, columns = job.dataset["tmax"].shape[1:]
     lines += [
