@@ -138,11 +138,13 @@ def c3_carboxylation(
     leaf: Any, state: C3State, co2: float, assimilation: float, pressure: float
 ) -> tuple[float, float]:
     """Return carboxylation Vc and oxygenation Vo = 2 (compensation point / CO2) Vc."""
-    enzyme = state.carboxylation * co2 / (co2 + state.effective_michaelis)
-    light = state.electron_transport * co2 / (4.0 * co2 + 8.0 * state.compensation_point)
-    ratio = state.compensation_point / co2
-    above = max(1.0 - ratio, 1e-12)
+    by_enzyme, by_light, by_co2 = three_inverses(
+        co2 + state.effective_michaelis, 4.0 * co2 + 8.0 * state.compensation_point, co2
+    )
+    enzyme = state.carboxylation * co2 * by_enzyme
+    light = state.electron_transport * co2 * by_light
+    ratio = state.compensation_point * by_co2
     # At or below the compensation point the use of triose phosphate sets no limit.
-    triose = 3.0 * state.triose_phosphate / above if ratio < 1.0 else 1e30
+    triose = 3.0 * state.triose_phosphate / max(1.0 - ratio, 1e-12) if ratio < 1.0 else 1e30
     carboxylation = min(min(enzyme, light), triose)
     return carboxylation, 2.0 * ratio * carboxylation

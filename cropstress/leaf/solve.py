@@ -35,7 +35,7 @@ from cropstress.leaf.pathway import (
     state_found,
     state_kept,
 )
-from cropstress.leaf.responses import peak_normalisation, temperature_terms
+from cropstress.leaf.responses import peak_normalisation, temperature_terms, three_inverses
 from cropstress.leaf.stomata import (
     Stomata,
     co2_at_rest,
@@ -52,7 +52,7 @@ _MORE_SECANT_STEPS = 12  # for the few that are left then
 _SCAN_STEPS = 40
 _REFINING_STEPS = 24
 _START = 0.25  # share of the way from the air down to the coolest leaf: few steps, and the coolest solution (measured)
-_TOLERANCE = 1e-5  # K: the surplus left over in an accepted solution, by its slope with temperature
+_TOLERANCE = 3e-5  # K: the surplus left over in an accepted solution, by its slope with temperature
 _LAST_STEP = 0.05  # K: a larger last step means that the secant had not settled
 _KEPT_OPEN = 0.5  # 1; see `expected_slope`
 _LEAST_SLOPE = 0.05  # of cp (gH + gr): a flatter secant is not trusted
@@ -152,14 +152,15 @@ def set_out(leaf, lanes, width, space):  # type: ignore[no-untyped-def]
         wind, air, dew_point = space[at(WIND, i)], space[at(AIR_TEMPERATURE, i)], space[at(DEW_POINT, i)]
         sensible = heat_conductance(wind, leaf.leaf_width) + radiative_conductance(air)
         vapour = vapour_conductance(wind, leaf.leaf_width)
-        driest = air + space[at(NET_RADIATION, i)] / (AIR_HEAT_CAPACITY * sensible)
+        by_vapour, by_pressure, by_sensible = three_inverses(vapour, space[at(PRESSURE, i)], sensible)
+        driest = air + space[at(NET_RADIATION, i)] / AIR_HEAT_CAPACITY * by_sensible
         carboxylation_25, electron_transport_25 = normal_capacities(leaf, space[at(GROWTH_TEMPERATURE, i)])
         space[at(_CARBOXYLATION_25, i)] = carboxylation_25
         space[at(_ELECTRON_TRANSPORT_25, i)] = electron_transport_25
         space[at(_SENSIBLE, i)] = sensible
         space[at(_VAPOUR, i)] = vapour
-        space[at(_RESISTANCE, i)] = VAPOUR_TO_CO2_BOUNDARY / vapour
-        space[at(_INVERSE_PRESSURE, i)] = 1.0 / space[at(PRESSURE, i)]
+        space[at(_RESISTANCE, i)] = VAPOUR_TO_CO2_BOUNDARY * by_vapour
+        space[at(_INVERSE_PRESSURE, i)] = by_pressure
         coolest, warmest = min(dew_point, driest), max(dew_point, driest)
         near_air = min(max(air, coolest), warmest)
         space[at(_LOWER, i)] = coolest

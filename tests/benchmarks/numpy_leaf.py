@@ -204,7 +204,7 @@ def solve_with_numpy(leaves: Array, lanes: Array, oxygenation: float = 1.0) -> t
         small = np.abs(moved) < 1e-9
         secant = (surplus - surplus_before) / np.where(small, 1.0, moved)
         slope = np.where(small | (secant > -0.05 * _HEAT * block.sensible), slope, secant)
-    left = np.nonzero(~(np.abs(surplus) < 1e-5 * np.minimum(_HEAT * block.sensible, -slope)))[0]
+    left = np.nonzero(~(np.abs(surplus) < 3e-5 * np.minimum(_HEAT * block.sensible, -slope)))[0]
     if left.size:
         net[left], here[left] = _scan_upwards(_Block(leaf, lanes[:, left], oxygenation))
     return net, here
