@@ -11,8 +11,10 @@ from cropstress.crops import CropProfile, load_crop
 from cropstress.errors import fail
 from cropstress.one_leaf import gas_exchange, heat_loss
 from cropstress.report.curves import leaf_figure
+from cropstress.report.phrases import number, phrase
 from cropstress.report.writing import written_aside
 from cropstress.season.measures import CAUSES
+from cropstress.weather.humidity import saturation_vapour_pressure
 
 AIR_TEMPERATURES = np.arange(5.0, 46.0)  # degC
 HOT_AIR = (33.0, 36.0, 39.0, 42.0)  # degC
@@ -41,18 +43,21 @@ def leaf_curves(crop: str, folder: str | Path, photons: float = 1500.0, humidity
         raise fail(f"{humidity:g} is not a relative humidity", "--humidity", "Give a value from 1 to 100 %.")
     profile = load_crop(crop)
     air, co2 = (array.ravel() for array in np.meshgrid(AIR_TEMPERATURES, CO2_LEVELS))
-    vapour_pressure = 0.01 * humidity * 0.6108 * np.exp(17.27 * air / (air + 237.3))  # FAO-56 Eq. 11
+    vapour_pressure = 0.01 * humidity * saturation_vapour_pressure(air)
     answer = gas_exchange(profile, air, vapour_pressure, photons, co2)
     table = pd.DataFrame(
         {"air_temperature": air, "co2": co2} | {name: answer[name].values for name in map(str, answer.data_vars)}
     )
     folder = Path(folder)
     table_path, figure_path = folder / f"leaf-{profile.name}.csv", folder / f"leaf-{profile.name}.png"
+    notes = phrase("leaf.conditions", photons=number(photons), humidity=number(humidity))
+    if profile.pathway == "C3":
+        notes += " " + phrase("leaf.growth_temperature", value=number(profile.number("growth_temperature")))
     with written_aside(table_path) as aside:
-        table.round(4).to_csv(aside, index=False)
+        first = pd.Series([f"{notes} {phrase('caution.full')}"], name="notes")
+        pd.concat([table.round(4), first], axis=1).to_csv(aside, index=False)
     leaf_figure(
-        table, figure_path, label=profile.label, heat_onset=profile.number("heat_onset"),
-        notes=[f"{photons:g} µmol m⁻² s⁻¹ of light, relative humidity {humidity:g} %, wind 2 m/s, 101.3 kPa"],
+        table, figure_path, label=profile.label, heat_onset=profile.number("heat_onset"), notes=[notes],
     )  # fmt: skip
     today = table[(table["co2"] == 421.0) & (table["air_temperature"] % 5 == 0)]
     lines = [

@@ -13,6 +13,7 @@ import numpy as np
 import xarray as xr
 
 from cropstress.crops import CropProfile
+from cropstress.crops.profile_files import is_profile_path
 from cropstress.errors import Fault, InputError, nearest
 from cropstress.places import Districts, read_area, read_districts, read_sowing, sowing_faults
 from cropstress.region import Entry, Options, TimeAxis, compute_results, make_entry, time_axis
@@ -23,6 +24,7 @@ from cropstress.report.writer import write_report
 from cropstress.run_faults import in_run_file, input_records, places_faults, weather_told, with_what_is_kept
 from cropstress.runfile import CropEntry, RunFile, read_runfile
 from cropstress.weather import Weather, mend_words, read_weather
+from cropstress.weather.open import find_files
 
 
 @dataclass
@@ -241,7 +243,7 @@ def run(
     run_file = job.run_file
     folder = Path(out) if out is not None else run_file.output_folder
     resolved = run_file.resolved()
-    inputs = input_records([*job.weather.paths, *_place_files(job)], run_file.base)
+    inputs = input_records(input_files(job), run_file.base)
     claim_folder(folder, run_file.title, resolved)
     say = progress or (lambda _what, _share: None)
     with weather_told(job.weather, run_file.base):
@@ -276,15 +278,18 @@ def run(
     return Outcome(folder, summary_text(summarise(results, job.areas)), remarks + report.remarks, results)
 
 
-def _place_files(job: Job) -> list[Path]:
-    """Return the files of districts, sowing and crop area that a job has read, each once."""
-    named = [job.run_file.places.districts]
-    taken = {entry.name for entry in job.entries}
-    for entry in job.run_file.crops:
-        if entry.name not in taken:
+def input_files(job: Job) -> list[Path]:
+    """Return every file the results depend on, each once: weather, elevation, places, profiles of one's own."""
+    run_file = job.run_file
+    computed = {entry.name for entry in job.entries}
+    named = [run_file.places.districts]
+    for entry in run_file.crops:
+        if entry.name not in computed:
             continue
         sowing, area = entry.sowing_spec(), entry.area_spec()
-        if not isinstance(sowing, str):
-            named += [sowing.get("grid"), sowing.get("table")]
-        named.append(area if area is None or isinstance(area, str) else area["file"])
-    return list(dict.fromkeys(job.run_file.base / name for name in named if name is not None))
+        if isinstance(sowing, dict):
+            named.append(sowing.get("grid") or sowing.get("table"))
+        named.append(area["file"] if isinstance(area, dict) else area)
+        named.append(entry.profile if is_profile_path(entry.profile) else None)
+    places = [path for name in named if name is not None for path in find_files(name, run_file.base)[0]]
+    return list(dict.fromkeys([*job.weather.paths, *places]))
