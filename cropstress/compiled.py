@@ -28,8 +28,10 @@ from llvmlite import ir
 from numba import types
 from numba.extending import intrinsic
 
-# Reassociation is left out: a result must not depend on how a loop was split into vectors.
-FAST_MATH = {"nnan", "ninf", "nsz", "arcp", "contract"}
+# No flag may change how a result is rounded: neither the split of a loop into vectors, nor where a function was
+# inlined, nor whether it was compiled now or read from the cache may show in a number. Products and sums are
+# therefore fused only where `fused` says so.
+FAST_MATH = {"nnan", "ninf", "nsz"}
 
 LANES = 256  # leaves that a loop takes together: a multiple of every vector width times unrolling
 ROW = LANES + 8  # a power of two would put all rows into the same few places of the processor's cache
@@ -113,6 +115,16 @@ def at(row: int, lane: int) -> np.uint64:
     return np.uint64(row * ROW + lane)
 
 
+@intrinsic
+def fused(typing_context, factor, other, addend):  # type: ignore[no-untyped-def]
+    """Return factor x other + addend, rounded once."""
+
+    def generate(context, builder, signature, arguments):  # type: ignore[no-untyped-def]
+        return builder.fma(*arguments)
+
+    return types.float64(types.float64, types.float64, types.float64), generate
+
+
 # 1.5 x 2^52 brings a whole number into the lowest bits of the significand; 1023 is the bias of the exponent.
 _WHOLE = 6755399441055744.0 + 1023.0
 
@@ -136,13 +148,12 @@ def exponential(x: float) -> float:
     Range reduction to |r| <= ln(2)/2, and there the polynomial of degree 6 with the smallest largest relative
     error (derived here by Remez exchange; a test holds the error).
     """
-    shifted = x * 1.4426950408889634 + _WHOLE  # 1 / ln 2; rounds to the nearest whole number
-    r = x - (shifted - _WHOLE) * 0.6931471805599453  # ln 2
-    p = 0.0013836846134577057
-    p = p * r + 0.008374815798301793
-    p = p * r + 0.04166822556692284
-    p = p * r + 0.16666420169946367
-    p = p * r + 0.4999999207982802
-    p = p * r + 1.0000000363231765
-    p = p * r + 1.0000000005541663
+    shifted = fused(x, 1.4426950408889634, _WHOLE)  # 1 / ln 2; rounds to the nearest whole number
+    r = fused(shifted - _WHOLE, -0.6931471805599453, x)  # ln 2
+    p = fused(0.0013836846134577057, r, 0.008374815798301793)
+    p = fused(p, r, 0.04166822556692284)
+    p = fused(p, r, 0.16666420169946367)
+    p = fused(p, r, 0.4999999207982802)
+    p = fused(p, r, 1.0000000363231765)
+    p = fused(p, r, 1.0000000005541663)
     return p * _power_of_two(shifted)

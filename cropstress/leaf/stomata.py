@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from typing import Any, NamedTuple
 
-from cropstress.compiled import inlined
+from cropstress.compiled import fused, inlined
 from cropstress.leaf.air import SMALLEST_STOMATAL_DEFICIT, VAPOUR_TO_CO2_STOMATA
 
 LEAST_CO2 = 1.0  # umol mol-1: a Newton step that overshoots is caught here
@@ -108,10 +108,10 @@ def hyperbola(
         takes_up,
         capacity,
         respiration,
-        inside_0 - compensation_point * open_0,
-        inside_1 - compensation_point * open_1,
-        inside_0 + half_saturation * open_0,
-        inside_1 + half_saturation * open_1,
+        fused(-compensation_point, open_0, inside_0),
+        fused(-compensation_point, open_1, inside_1),
+        fused(half_saturation, open_0, inside_0),
+        fused(half_saturation, open_1, inside_1),
         -stomata.resistance * narrowed,
     )
 
@@ -124,12 +124,12 @@ def newton_on_hyperbola(limit: Any, rate: float) -> float:
     own side, where steps from the side of zero never overshoot.
     """
     rate = max(rate, 0.0) if limit.takes_up else min(rate, 0.0)
-    above = limit.above_0 + rate * (limit.above_1 + rate * limit.square)
-    below = limit.below_0 + rate * (limit.below_1 + rate * limit.square)
-    above_slope = limit.above_1 + 2.0 * rate * limit.square
-    below_slope = limit.below_1 + 2.0 * rate * limit.square
-    missing = limit.capacity * above - (limit.respiration + rate) * below
-    fall = below * below - limit.capacity * (above_slope * below - above * below_slope)
+    above = fused(rate, fused(rate, limit.square, limit.above_1), limit.above_0)
+    below = fused(rate, fused(rate, limit.square, limit.below_1), limit.below_0)
+    above_slope = fused(2.0 * rate, limit.square, limit.above_1)
+    below_slope = fused(2.0 * rate, limit.square, limit.below_1)
+    missing = fused(limit.capacity, above, -(limit.respiration + rate) * below)
+    fall = fused(below, below, -limit.capacity * fused(above_slope, below, -above * below_slope))
     further = rate + below * missing / fall
     return max(further, _SMALLEST_SHARE * rate) if limit.takes_up else min(further, 0.0)
 
