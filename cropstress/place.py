@@ -21,6 +21,7 @@ from cropstress.report.curves import trace_figure
 from cropstress.report.phrases import phrase
 from cropstress.report.summary import place_words
 from cropstress.report.writing import written_aside
+from cropstress.run_faults import weather_told
 from cropstress.season import layout as at
 from cropstress.season.measures import STAGES
 from cropstress.weather import cell_latitude_longitude
@@ -107,7 +108,8 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
 def _trace_entry(job: Job, entry: Entry, one: xr.Dataset, stem: Path) -> list[Path]:
     """Compute a crop entry on one cell and write its days."""
     plan = Plan(make_plan(one).blocks, [(0, 1, 0, 1)])
-    computed = compute(one, [entry], plan, job.axis, threads=1, keep_daily=True)
+    with weather_told(job.weather, job.run_file.base):
+        computed = compute(one, [entry], plan, job.axis, threads=1, keep_daily=True)
     state = computed.tiles[entry.name][0]
     result = make_result(
         entry, gather(entry, [state], 1, computed.observed), one, job.axis, job.options, has_gas_exchange(one),
@@ -136,9 +138,9 @@ def _cell_size(latitude: np.ndarray, longitude: np.ndarray, row: int, column: in
     """Return the distance to the farthest neighbour of a cell, at least 25 km [km]."""
     rows, columns = latitude.shape
     largest = 25.0
+    here = (latitude[row, column], longitude[row, column])
     for r, c in ((row + 1, column), (row - 1, column), (row, column + 1), (row, column - 1)):
         if 0 <= r < rows and 0 <= c < columns:
-            here = (latitude[row, column], longitude[row, column])
             _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], here)
             largest = max(largest, step)
     return largest
@@ -149,9 +151,7 @@ def _at_cell(entry: Entry, cell: int) -> Entry:
     return replace(entry, sowing=entry.sowing[:, cell : cell + 1], grown=entry.grown[cell : cell + 1])
 
 
-def _table(
-    daily: np.ndarray, totals: np.ndarray, entry: Entry, one: xr.Dataset, axis: TimeAxis
-) -> pd.DataFrame:
+def _table(daily: np.ndarray, totals: np.ndarray, entry: Entry, one: xr.Dataset, axis: TimeAxis) -> pd.DataFrame:
     """Return the days of the seasons, a row a day: the weather as it was used, and what the day gave."""
     days = np.nonzero(np.isfinite(daily[:, at.DAILY_STAGE]))[0]
     sown = totals[np.isfinite(totals[:, at.SOWING]), at.SOWING]

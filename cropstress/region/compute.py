@@ -5,6 +5,7 @@ from __future__ import annotations
 import threading
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from typing import Any
 
 import dask
 import numpy as np
@@ -95,9 +96,7 @@ def load_block(dataset: xr.Dataset, axis: TimeAxis, ground: Ground, first: int, 
     days = after - first
     shape = (days, ground.latitude.size)
     raw = {name: np.asarray(loaded[name].values, dtype=float).reshape((days, -1, 1)) for name in names}
-    above = extraterrestrial_radiation(
-        axis.sun_day()[first:after, None, None], ground.latitude_degrees[None, :, None]
-    )
+    above = extraterrestrial_radiation(axis.sun_day()[first:after, None, None], ground.latitude_degrees[None, :, None])
     mended = mend_block(raw, np.broadcast_to(above, (days, shape[1], 1)))
     weather = np.empty((len(VARIABLES), *shape))
     for number, name in enumerate(VARIABLES):
@@ -246,9 +245,7 @@ def compute(
                 progress(finished / total)
         return state
 
-    needed = [
-        entry.grown & (entry.sowing >= 0).any(axis=0) for entry in entries
-    ]
+    needed = [entry.grown & (entry.sowing >= 0).any(axis=0) for entry in entries]
     for k, (first, after) in enumerate(plan.blocks):
         brake = ("done", k - BLOCKS_ALIVE) if k >= BLOCKS_ALIVE else None
         graph["load", k] = (load, first, after, brake)
@@ -263,7 +260,7 @@ def compute(
                 users.append(key)
         graph["done", k] = (_done, *users)
     last = len(plan.blocks) - 1
-    wanted = [[("tile", e, t, last) for t in range(len(plan.tiles))] for e in range(len(entries))]
+    wanted: list[Any] = [[("tile", e, t, last) for t in range(len(plan.tiles))] for e in range(len(entries))]
     states = dask.threaded.get(graph, wanted, num_workers=threads)
     account.close()
     tiles = {entry.name: list(states[e]) for e, entry in enumerate(entries)}

@@ -141,9 +141,7 @@ def _status(entry: Entry, totals: np.ndarray, options: Options, observed: np.nda
     return status
 
 
-def _measures(
-    entry: Entry, totals: np.ndarray, axis: TimeAxis, options: Options, gas: bool
-) -> dict[str, np.ndarray]:
+def _measures(entry: Entry, totals: np.ndarray, axis: TimeAxis, options: Options, gas: bool) -> dict[str, np.ndarray]:
     """Return every measure on all cells, (seasons, cells)."""
     fields = {name: totals[:, SERIES.index(name)] for name in SERIES}
     fields |= {name: totals[:, row] for name, row in _ROWS.items()}
@@ -209,7 +207,7 @@ def _coordinates(entry: Entry, totals: np.ndarray, axis: TimeAxis, weather: xr.D
         coords[name] = float(entry.season[name][0])
     if entry.season["flowers"][0]:
         coords["flowering_limit"] = float(entry.season["flowering_limit"][0])
-    for name, coordinate in weather.coords.items():
-        if "time" not in coordinate.dims and name not in coords:
-            coords[str(name)] = coordinate.variable
+    for key, coordinate in weather.coords.items():
+        if "time" not in coordinate.dims and key not in coords:
+            coords[str(key)] = coordinate.variable
     return coords

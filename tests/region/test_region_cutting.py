@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import itertools
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -64,6 +65,19 @@ def test_result_does_not_depend_on_the_cutting(
 ) -> None:
     for cut, whole in zip(computed(tile, block_days, threads), uncut, strict=True):
         assert differing(cut, whole) == []
+
+
+def test_a_cell_does_not_see_its_neighbours(weather: xr.Dataset, entries: list[Entry], uncut: list[xr.Dataset]) -> None:
+    computed = np.argwhere(uncut[0]["cell_status"].values[0] == CELL_STATUS["computed"])
+    for row, column in computed[[0, len(computed) // 2, -1]]:
+        place = {"lat": [row], "lon": [column]}
+        cell = row * weather.sizes["lon"] + column
+        alone = [replace(entry, sowing=entry.sowing[:, [cell]], grown=entry.grown[[cell]]) for entry in entries]
+        results, _ = compute_results(weather.isel(place), alone, Options(), {})
+        for result, whole in zip(results, uncut, strict=True):
+            whole = whole.isel(place)
+            for name in whole.data_vars:
+                np.testing.assert_array_equal(result[name].values, whole[name].values, err_msg=str(name))
 
 
 @pytest.mark.parametrize("block_days", [1, 10, 70])

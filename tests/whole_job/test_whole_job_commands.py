@@ -58,7 +58,7 @@ def test_check_says_all_and_writes_nothing(inputs: Path, command: Command) -> No
         "hot day above 32 degC, at flowering above 30 degC",
         "no flowering window",
         "CO2 416.4 umol/mol",
-        "Results go to results/season.",
+        "Results go to results/season",
         "seasons.allowed_missing = 0.1",
         "model.canopy = sunlit_shaded",
     ):
@@ -94,9 +94,6 @@ def test_folder_of_this_run_is_replaced_and_of_another_refused(inputs: Path, com
     out = inputs / "out"
     arguments = ("run", inputs / "season.toml", "--out", out, "--quiet")
     assert command(*arguments, "--only", "crop=potato").returncode == 0
-    first = snapshot(out)
-    assert command(*arguments, "--only", "crop=potato").returncode == 0
-    assert set(snapshot(out)) == set(first)
     # Another crop of the same run: what the earlier run wrote and this one does not is removed
     assert command(*arguments, "--only", "crop=wheat").returncode == 0
     assert {path.name.partition("-")[0] for path in (out / "maps").iterdir()} == {"wheat"}
@@ -137,6 +134,13 @@ def place_of(run: Run, crop: str) -> tuple[int, int, str]:
     return int(row), int(column), f"{result['lat'].values[row]:.3f},{result['lon'].values[column]:.3f}"
 
 
+def read_exactly(path: Path) -> pd.DataFrame:
+    """Read a table without rounding a number: the quick reading of pandas may be off in the last digit."""
+    table = pd.read_csv(path, dtype=str, keep_default_na=False)
+    numbers = [name for name in table.columns if name not in ("date", "stage", "notes")]
+    return table.assign(**{name: [float(text or "nan") for text in table[name]] for name in numbers})
+
+
 def test_trace_equals_the_map_cell_exactly(thinned_run: Run, command: Command, tmp_path: Path) -> None:
     """Its table has all digits: added up in order it is the cell of the result, bit for bit."""
     row, column, at = place_of(thinned_run, "wheat")
@@ -152,7 +156,7 @@ def test_trace_equals_the_map_cell_exactly(thinned_run: Run, command: Command, t
             continue
         crop = path.name.partition("-")[0]
         cell = thinned_run.unwritten(crop).isel(season=0, lat=row, lon=column)
-        table = pd.read_csv(path, float_precision="round_trip")
+        table = read_exactly(path)
         assert len(table) == cell["season_days"] and set(table["season"]) == {2021}
         with xr.open_dataset(thinned_run.grid(crop), decode_times=False, mask_and_scale=False) as grid:
             for name in (
@@ -228,7 +232,7 @@ def test_missing_run_file_and_unknown_option_are_no_crash(command: Command, tmp_
 
 
 @pytest.mark.parametrize("stage", ["computing", "writing"])
-def test_interrupt_leaves_nothing_half_written(inputs: Path, tmp_path: Path, stage: str) -> None:
+def test_interrupt_leaves_nothing_half_written(inputs: Path, command: Command, tmp_path: Path, stage: str) -> None:
     """Ctrl-C while it computes, and while it writes: exit code 130, and every file there is whole."""
     out = inputs / "out"
     windows = sys.platform == "win32"
@@ -248,7 +252,7 @@ def test_interrupt_leaves_nothing_half_written(inputs: Path, tmp_path: Path, sta
     process.send_signal(signal.CTRL_BREAK_EVENT if windows else signal.SIGINT)  # type: ignore[attr-defined,unused-ignore]
     _, stderr = process.communicate(timeout=600)
     assert process.returncode == 130, stderr
-    assert "Traceback" not in stderr
+    assert "Traceback" not in stderr and "Interrupted" in stderr
     record = json.loads((out / "run.json").read_text("utf-8"))
     assert record["finished"] is False and record["outputs"] == []
     files = [path for path in out.rglob("*") if path.is_file()]
@@ -262,10 +266,7 @@ def test_interrupt_leaves_nothing_half_written(inputs: Path, tmp_path: Path, sta
         elif path.suffix == ".png":
             with Image.open(path) as image:
                 image.load()
-    # The same command starts again in the same folder and ends well
-    again = subprocess.run(
-        [sys.executable, "-m", "cropstress.cli", "run", str(inputs / "season.toml"), "--out", str(out), "--quiet"],
-        env=environment(tmp_path), capture_output=True, text=True, check=False, timeout=1200,
-    )  # fmt: skip
+    # The same run starts again in the same folder and ends well
+    again = command("run", inputs / "season.toml", "--out", out, "--only", "crop=potato", "--quiet")
     assert again.returncode == 0, again.stderr
     assert json.loads((out / "run.json").read_text("utf-8"))["finished"] is True

@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 import rasterio
+import rasterio.transform
 import xarray as xr
 from finished_run import Run
 
@@ -25,9 +26,11 @@ def test_geotiff_holds_the_values_of_the_netcdf_north_up(finished: Run) -> None:
                 lat, lon = grid["lat"].values, grid["lon"].values
                 assert lat[0] < lat[-1], "the sample grids run south to north"
                 rows, columns = np.indices(values.shape)
-                x, y = transform * (columns + 0.5, rows + 0.5)
-                np.testing.assert_allclose(x, np.broadcast_to(lon, values.shape), atol=1e-9)
-                np.testing.assert_allclose(y, np.broadcast_to(lat[::-1, None], values.shape), atol=1e-9)
+                x, y = rasterio.transform.xy(transform, rows.ravel(), columns.ravel())
+                np.testing.assert_allclose(np.reshape(x, values.shape), np.broadcast_to(lon, values.shape), atol=1e-9)
+                np.testing.assert_allclose(
+                    np.reshape(y, values.shape), np.broadcast_to(lat[::-1, None], values.shape), atol=1e-9
+                )
                 expected = grid[measure.name].values[0][::-1]
                 missing = np.isnan(expected) if measure.dtype == "float32" else expected < 0
                 assert missing.any() and not missing.all()
