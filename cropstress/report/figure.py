@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -16,7 +17,7 @@ from cropstress.report.map_panel import MapPanel, axis_words
 from cropstress.report.page import LARGE, MARGIN, MIDDLE, SMALL, WIDTH, Page, broken, line_height
 from cropstress.report.phrases import number, phrase, printed_date, title_of
 from cropstress.report.version import package_version
-from cropstress.season.measures import CELL_STATUS, MEASURES
+from cropstress.season.measures import CAUSES, CELL_STATUS, MEASURES
 
 #: Tallest map alone and beside a second one [inch].
 MOST_HEIGHT = 5.4
@@ -97,10 +98,13 @@ def map_page(result: xr.Dataset, measure: str, season: int) -> Page:
     return page
 
 
-def _panel(
-    result: xr.Dataset, name: str, season: int, grid: MapGrid, most_height: float, scaled: bool
-) -> MapPanel:
+def _panel(result: xr.Dataset, name: str, season: int, grid: MapGrid, most_height: float, scaled: bool) -> MapPanel:
     classes = classes_for(name)
+    if classes.measure.kind == "flag" and result.attrs.get("pathway") == "C4":
+        # In C4 leaves photorespiration is small, and no sentence may blame it, as in the summary
+        place = 1 + CAUSES.index("photorespiration")
+        labels = (*classes.labels[:place], phrase("causes.unclear"), *classes.labels[place + 1 :])
+        classes = replace(classes, labels=labels)
     found = kinds.categories(result, classes, season)
     return MapPanel(grid, found, classes, _reasons(result, season), most_height, scaled)
 
@@ -117,8 +121,7 @@ def _title(result: xr.Dataset, measure: str) -> str:
 
 def _subtitle(result: xr.Dataset, season: int) -> str:
     first, last = (
-        printed_date(statistics.season_bound(result, season, which))
-        for which in ("season_start", "season_end")
+        printed_date(statistics.season_bound(result, season, which)) for which in ("season_start", "season_end")
     )
     period = phrase("words.period", first=first, last=last)
     return f"{phrase('words.season', year=season)} ({period}), {travelling.scenario_words(result)}"
@@ -126,9 +129,7 @@ def _subtitle(result: xr.Dataset, season: int) -> str:
 
 def _foot(result: xr.Dataset, measure: str, season: int, grid: MapGrid) -> list[str]:
     known = MEASURES[measure]
-    more = tuple(
-        name for name in (known.threshold,) if name in ("hot_leaf_limit", "warm_night_limit", "dry_air_limit")
-    )
+    more = tuple(name for name in (known.threshold,) if name in ("hot_leaf_limit", "warm_night_limit", "dry_air_limit"))
     texts = [
         _beside(result, measure, season),
         travelling.assumptions(result, tuple(str(name) for name in more)),

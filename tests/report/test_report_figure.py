@@ -92,6 +92,13 @@ def test_the_page_says_what_it_must(result_maker: Maker) -> None:
         assert words in text, words
 
 
+def test_no_map_of_a_c4_crop_blames_photorespiration(result_maker: Maker) -> None:
+    c4, c3 = (printed(map_page(result_maker(pathway=pathway), "leading_cause", 2021)) for pathway in ("C4", "C3"))
+    assert "photorespiration" not in c4 and "no single cause" in c4
+    assert "photorespiration" in c3 and "no single cause" not in c3
+    assert "enzymes" in c4 and "enzymes" in c3
+
+
 def test_the_leading_cause_is_never_shown_without_the_loss(result_maker: Maker) -> None:
     text = printed(map_page(result_maker(), "leading_cause", 2021))
     assert "Share of the leaves' carbon uptake lost to heat" in text
