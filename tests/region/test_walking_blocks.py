@@ -11,6 +11,7 @@ import xarray as xr
 
 import cropstress as cs
 from cropstress.region import compute as compute_module
+from cropstress.season.measures import CELL_STATUS
 
 
 @pytest.fixture
@@ -76,4 +77,6 @@ def test_where_the_crop_is_not_grown_nothing_is_computed(
     result = cs.assess(weather, "wheat", sowing="5 April", area=area).load()
     assert sum(cells) == 4
     assert np.isfinite(result["assimilation"].values).sum() == 4
-    assert (result["cell_status"].values[:, area == 0.0] == 1).all()
+    sea = np.isnan(weather["tmax"].isel(time=0).values)
+    assert (result["cell_status"].values[:, (area == 0.0) & ~sea] == CELL_STATUS["no_crop"]).all()
+    assert (result["cell_status"].values[:, sea] == CELL_STATUS["no_weather_data"]).all()
