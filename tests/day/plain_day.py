@@ -342,7 +342,9 @@ def plain_day(crop: Crop, weather: Weather, points: int = 8) -> dict[str, np.nda
     leaf = leaf_record(crop.profile)
     sky = sky_of(weather, points)
     shape = sky.air.shape
-    sums = dict.fromkeys(("assimilation", "lost_to_heat", "lost_to_photorespiration", "photorespired_co2", *CAUSES), 0.0)
+    sums = dict.fromkeys(
+        ("assimilation", "lost_to_heat", "lost_to_photorespiration", "photorespired_co2", *CAUSES), 0.0
+    )
     excess = []
     for leaves in leaves_of(sky, crop):
         cool_air = np.minimum(sky.air, onset)
@@ -350,9 +352,7 @@ def plain_day(crop: Crop, weather: Weather, points: int = 8) -> dict[str, np.nda
         actual_lanes = lanes_of(crop, weather, leaves, sky.air, sky.vapour_pressure)
         cool_lanes = lanes_of(crop, weather, leaves, cool_air, cool_humidity)
         actual, actual_open, cool, cool_open = (
-            solve_lanes(leaf, lanes, oxygenation)
-            for lanes in (actual_lanes, cool_lanes)
-            for oxygenation in (1.0, 0.0)
+            solve_lanes(leaf, lanes, oxygenation) for lanes in (actual_lanes, cool_lanes) for oxygenation in (1.0, 0.0)
         )
         excess.append((actual[solve.LEAF_TEMPERATURE].reshape(shape) - sky.air, leaves.area))
         gross_dry = gross_without_oxygenation(

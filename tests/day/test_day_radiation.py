@@ -54,7 +54,7 @@ def test_clearness_is_limited_to_what_reaches_the_top_of_the_air() -> None:
 
 @pytest.mark.parametrize("clearness", [0.0, 0.1, 0.22, 0.2200001, 0.4, 0.6, 0.8, 0.8000001, 0.95, 1.0])
 def test_diffuse_share_is_that_of_pvlib(clearness: float) -> None:
-    """pvlib is an independent library (pvlib.irradiance.erbs); its sun is put overhead, so that only Erbs counts."""
+    """The independent library is pvlib (pvlib.irradiance.erbs); its sun is put overhead, so that only Erbs counts."""
     top = pvlib.irradiance.get_extra_radiation(100)
     answer = pvlib.irradiance.erbs(clearness * top, zenith=0.0, datetime_or_doy=100)
     assert answer["kt"] == pytest.approx(clearness, abs=1e-12)
