@@ -2,11 +2,17 @@
 
 from __future__ import annotations
 
+import io
+import os
 import sys
+import traceback
 from pathlib import Path
 from typing import Annotated
 
 import typer
+
+INTERRUPTED = 130  # exit code of a program stopped by Ctrl-C; common practice of shells
+TRACEBACK = "CROPSTRESS_TRACEBACK"  # set, a fault of the program itself is printed in full
 
 app = typer.Typer(
     add_completion=False,
@@ -38,7 +44,10 @@ def run(
         TimeRemainingColumn(), console=console, transient=True,
     ) as bar:  # fmt: skip
         tasks: dict[str, int] = {}
-        bar.console.print("Opening the grids; the first run also compiles the model, which takes about a minute.")
+        bar.console.print(
+            "Opening the grids; the first run after an installation also compiles the model (about a minute).",
+            soft_wrap=True,
+        )
 
         def progress(what: str, share: float) -> None:
             if what not in tasks:
@@ -47,10 +56,10 @@ def run(
 
         outcome = run_job(runfile, out, threads=threads, only=_crop_name(only), progress=progress)
     for remark in outcome.remarks:
-        console.print(f"- {remark}", markup=False)
+        console.print(f"- {remark}", markup=False, soft_wrap=True)
     console.print()
-    console.print(outcome.summary, markup=False)
-    console.print(f"\nResults: {outcome.folder}", markup=False)
+    console.print(outcome.summary, markup=False, soft_wrap=True)
+    console.print(f"\nResults: {outcome.folder}", markup=False, soft_wrap=True)
 
 
 def _crop_name(only: str | None) -> str | None:
@@ -67,7 +76,7 @@ def _crop_name(only: str | None) -> str | None:
 @app.command()
 def check(runfile: Annotated[Path, typer.Argument(help="The run file (TOML).")]) -> None:
     """Say what was found, what is wrong and what would be computed; computes nothing."""
-    from cropstress.job import check as check_job
+    from cropstress.check import check as check_job
 
     for line in check_job(runfile):
         typer.echo(line)
@@ -86,7 +95,9 @@ def trace(
     try:
         latitude, longitude = (float(part) for part in at.split(","))
     except ValueError:
-        raise fail(f"'{at}' is not a place", "--at", "Write latitude and longitude as --at 42.5,-33.1.") from None
+        latitude = longitude = float("nan")
+    if not (-90.0 <= latitude <= 90.0 and -180.0 <= longitude <= 360.0):
+        raise fail(f"'{at}' is not a place", "--at", "Write latitude and longitude as --at 42.5,-33.1.")
     for path in trace_place(runfile, (latitude, longitude), out):
         typer.echo(str(path))
 
@@ -120,24 +131,41 @@ def main() -> None:
     """Run the command line and turn errors into exit codes."""
     from cropstress.errors import InputError
 
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="replace")  # a terminal without "×" or "é" shows "?" and goes on
     try:
         code = app(standalone_mode=False)
     except InputError as error:
         print(error, file=sys.stderr)
         sys.exit(2)
-    except KeyboardInterrupt:
-        print("Interrupted; the same command starts again.", file=sys.stderr)
-        sys.exit(130)
-    except typer.Abort:
-        sys.exit(130)
+    except (KeyboardInterrupt, typer.Abort):
+        code = INTERRUPTED
     except Exception as error:
-        import click
-
-        if isinstance(error, click.ClickException):
-            error.show()
-            sys.exit(error.exit_code)
-        raise
+        # A wrong option or argument: click's own error, or that of the copy of click inside newer releases of typer.
+        show, exit_code = getattr(error, "show", None), getattr(error, "exit_code", None)
+        if show is None or exit_code is None:
+            print(_own_fault(error), file=sys.stderr)
+            sys.exit(1)
+        show()
+        sys.exit(exit_code)
+    if code == INTERRUPTED:  # newer releases of typer return it
+        print("Interrupted. Every file under a final name is whole; the same command starts again.", file=sys.stderr)
     sys.exit(code if isinstance(code, int) else 0)
+
+
+def _own_fault(error: Exception) -> str:
+    """Return what to tell when the program itself fails: a short instruction, or the traceback where asked for."""
+    if os.environ.get(TRACEBACK):
+        return "".join(traceback.format_exception(error))
+    words = f"{type(error).__name__}: {error}" if str(error) else type(error).__name__
+    if isinstance(error, MemoryError):
+        return f"The memory was not enough ({words}).\n  Run with --threads 1, or cut the grids into parts."
+    return (
+        f"cropstress stopped at a fault of its own ({words}); your files need not be wrong.\n"
+        f"  Set {TRACEBACK}=1, run the same command again and report what it prints. Every file under a final "
+        "name is whole."
+    )
 
 
 if __name__ == "__main__":

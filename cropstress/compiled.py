@@ -1,9 +1,11 @@
 """How the numerical floors are compiled.
 
-Three decorators and one function, so that every kernel is built the same way:
+A few decorators and one function, so that every kernel is built the same way:
 
 * `inlined` for the small physical relations: they vanish into the loop that calls them;
-* `kernel` for the loops over lanes: single-threaded, releasing the global lock, cached on disk;
+* `lane_loop` for one straight-line loop over lanes. It reads and writes rows of one workspace, so the compiler
+  has only two pointers to tell apart, the workspace's and the crop's; with more it gives up vectors;
+* `kernel` for what calls such loops: single-threaded, releasing the global lock, cached on disk;
 * `exponential` is written here with plain arithmetic, because the compiler's own `exp` is a
   library call that keeps a loop from being turned into vector instructions.
 
@@ -21,12 +23,16 @@ from pathlib import Path
 from typing import Any
 
 import numba
+import numpy as np
 from llvmlite import ir
 from numba import types
 from numba.extending import intrinsic
 
 # Reassociation is left out: a result must not depend on how a loop was split into vectors.
 FAST_MATH = {"nnan", "ninf", "nsz", "arcp", "contract"}
+
+LANES = 256  # leaves that a loop takes together: a multiple of every vector width times unrolling
+ROW = LANES + 8  # a power of two would put all rows into the same few places of the processor's cache
 
 _PACKAGE = Path(__file__).parent
 
@@ -65,6 +71,11 @@ def inlined(function: Callable[..., Any]) -> Any:
     return numba.njit(forceinline=True, fastmath=FAST_MATH, error_model="numpy")(function)
 
 
+def lane_loop(function: Callable[..., Any]) -> Any:
+    """Compile one loop over lanes as a function of its own; no missing values."""
+    return numba.njit(fastmath=FAST_MATH, error_model="numpy", nogil=True)(function)
+
+
 def exact_inlined(function: Callable[..., Any]) -> Any:
     """Compile a small relation that may meet missing values."""
     return numba.njit(forceinline=True, error_model="numpy")(function)
@@ -92,47 +103,46 @@ def _cached(function: Callable[..., Any], fast_math: set[str] | bool) -> Any:
         numba.config.CACHE_DIR = before
 
 
+@inlined
+def at(row: int, lane: int) -> np.uint64:
+    """Return where a lane of a row stands in a workspace of rows of ROW numbers.
+
+    Workspaces are flat, so that the distance between two rows is known when a loop is compiled; unsigned,
+    so that no index could mean a place counted from the end.
+    """
+    return np.uint64(row * ROW + lane)
+
+
+# 1.5 x 2^52 brings a whole number into the lowest bits of the significand; 1023 is the bias of the exponent.
+_WHOLE = 6755399441055744.0 + 1023.0
+
+
 @intrinsic
-def _nearest_whole(typing_context, value):  # type: ignore[no-untyped-def]
-    """Round to the nearest whole number, ties to even."""
+def _power_of_two(typing_context, shifted):  # type: ignore[no-untyped-def]
+    """Return 2 to a whole number from -1022 to 1023, given as that number + _WHOLE."""
 
     def generate(context, builder, signature, arguments):  # type: ignore[no-untyped-def]
-        double = ir.DoubleType()
-        rint = builder.module.declare_intrinsic("llvm.rint", [double])
-        return builder.call(rint, arguments)
-
-    return types.float64(types.float64), generate
-
-
-@intrinsic
-def _power_of_two(typing_context, whole):  # type: ignore[no-untyped-def]
-    """Return 2 to a whole number between -1022 and 1023, by writing it into the exponent's bits."""
-
-    def generate(context, builder, signature, arguments):  # type: ignore[no-untyped-def]
-        double, integer = ir.DoubleType(), ir.IntType(64)
-        # 1.5 x 2^52 puts a whole number into the lowest bits of the significand; 1023 is the exponent's bias.
-        shifted = builder.fadd(arguments[0], ir.Constant(double, 6755399441055744.0 + 1023.0))
-        bits = builder.shl(builder.bitcast(shifted, integer), ir.Constant(integer, 52))
-        return builder.bitcast(bits, double)
+        integer = ir.IntType(64)
+        bits = builder.shl(builder.bitcast(arguments[0], integer), ir.Constant(integer, 52))
+        return builder.bitcast(bits, ir.DoubleType())
 
     return types.float64(types.float64), generate
 
 
 @inlined
 def exponential(x: float) -> float:
-    """Return e to the power x, for |x| < 700, with a relative error under 5e-11, without a library call.
+    """Return e to the power x, for |x| < 700, with a relative error under 2e-9, without a library call.
 
-    Range reduction to |r| <= ln(2)/2, and there the polynomial of degree 7 with the smallest largest
-    relative error (derived here by Lawson's reweighted least squares; a test holds the error).
+    Range reduction to |r| <= ln(2)/2, and there the polynomial of degree 6 with the smallest largest relative
+    error (derived here by Remez exchange; a test holds the error).
     """
-    whole = _nearest_whole(x * 1.4426950408889634)  # 1 / ln 2
-    r = x - whole * 0.6931471805599453  # ln 2
-    p = 0.0001977515849290681
-    p = p * r + 0.001394819513978724
-    p = p * r + 0.00833356118111822
-    p = p * r + 0.04166622525002668
-    p = p * r + 0.16666665125214536
-    p = p * r + 0.5000000104598433
-    p = p * r + 1.0000000002432898
-    p = p * r + 0.9999999999616521
-    return p * _power_of_two(whole)
+    shifted = x * 1.4426950408889634 + _WHOLE  # 1 / ln 2; rounds to the nearest whole number
+    r = x - (shifted - _WHOLE) * 0.6931471805599453  # ln 2
+    p = 0.0013836846134577057
+    p = p * r + 0.008374815798301793
+    p = p * r + 0.04166822556692284
+    p = p * r + 0.16666420169946367
+    p = p * r + 0.4999999207982802
+    p = p * r + 1.0000000363231765
+    p = p * r + 1.0000000005541663
+    return p * _power_of_two(shifted)

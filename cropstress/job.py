@@ -1,27 +1,30 @@
-"""From a run file to finished results: everything the commands `run`, `check` and `trace` do."""
+"""From a run file to finished results."""
 
 from __future__ import annotations
 
 import datetime
 import time
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 import xarray as xr
 
-from cropstress.errors import Fault, InputError, fail, nearest
-from cropstress.places import Districts, read_area, read_districts, read_sowing
-from cropstress.region import Entry, Options, TimeAxis, compute_results, make_entry, make_plan, time_axis
+from cropstress.crops import CropProfile
+from cropstress.crops.profile_files import is_profile_path
+from cropstress.errors import Fault, InputError, nearest
+from cropstress.places import Districts, read_area, read_districts, read_sowing, sowing_faults
+from cropstress.region import Entry, Options, TimeAxis, compute_results, make_entry, time_axis
 from cropstress.report.classes import known_measure
 from cropstress.report.folder import check_folder, claim_folder
-from cropstress.report.record import file_record
 from cropstress.report.summary import summarise, summary_text
 from cropstress.report.writer import write_report
-from cropstress.runfile import RunFile, load_runfile
+from cropstress.run_faults import in_run_file, input_records, places_faults, weather_told, with_what_is_kept
+from cropstress.runfile import CropEntry, RunFile, read_runfile
 from cropstress.weather import Weather, mend_words, read_weather
+from cropstress.weather.open import find_files
 
 
 @dataclass
@@ -60,7 +63,9 @@ class Outcome:
     results: list[xr.Dataset]
 
 
-def prepare(path: str | Path, only: str | None = None) -> Job:
+def prepare(
+    path: str | Path, only: str | None = None, out: str | Path | None = None, *, writes: bool = False
+) -> Job:
     """Read a run file, open its grids and lay its crops on them.
 
     Parameters
@@ -69,24 +74,22 @@ def prepare(path: str | Path, only: str | None = None) -> Job:
         The run file.
     only : str, optional
         Name of the one crop entry to take.
+    out : path, optional
+        Folder for the results, instead of the run file's.
+    writes : bool
+        Whether the output folder is looked at, too.
 
     Raises
     ------
     InputError
-        With all faults of the run file, the profiles, the grids and the places.
+        With all faults of the run file, the profiles, the grids, the places and the output folder.
     """
-    run_file = load_runfile(path)
-    entries = list(run_file.crops)
-    if only is not None:
-        entries = [entry for entry in entries if entry.name == only]
-        if not entries:
-            names = [entry.name for entry in run_file.crops]
-            near = nearest(only, names)
-            raise fail(
-                f"there is no crop entry '{only}'", str(path),
-                f"Did you mean '{near}'?" if near else f"The entries are {', '.join(names)}.",
-            )  # fmt: skip
-    faults: list[Fault] = []
+    run_file, faults = read_runfile(path)
+    if run_file is None:
+        raise InputError(faults)
+    entries = _chosen(run_file, only, faults)
+    if writes and not any("output" in fault.where for fault in faults):
+        _collect(faults, check_folder, out or run_file.output_folder, run_file.title)
     for measure in run_file.maps.measures:
         _collect(faults, known_measure, measure)
     profiles = _collect(faults, run_file.profiles) or {}
@@ -95,10 +98,10 @@ def prepare(path: str | Path, only: str | None = None) -> Job:
         run_file.places.elevation_spec(),
     )  # fmt: skip
     if weather is None:
-        raise InputError(faults)
-    dataset = _through(weather.dataset, run_file, faults)
-    axis = time_axis(dataset)
+        raise InputError(in_run_file(fault, run_file) for fault in [*faults, *places_faults(run_file)])
     remarks = list(weather.remarks)
+    dataset = _through(weather.dataset, run_file, faults, remarks)
+    axis = time_axis(dataset)
     districts = _districts(run_file, dataset, faults, remarks)
     options = Options(
         run_file.model.canopy, run_file.model.acclimation, run_file.model.least_potential,
@@ -106,27 +109,55 @@ def prepare(path: str | Path, only: str | None = None) -> Job:
     )  # fmt: skip
     job = Job(run_file, weather, dataset, axis, [], options, districts, {}, {}, remarks)
     for entry in entries:
-        sowing = _collect(faults, read_sowing, entry.sowing_spec(), dataset, districts, run_file.base)
-        spec = entry.area_spec()
-        area = _collect(faults, read_area, spec, dataset, run_file.base) if spec is not None else None
-        if area is not None:
-            job.areas[entry.name] = area
-        if sowing is None or entry.name not in profiles:
-            continue
-        job.sowing_words[entry.name] = sowing.words
-        remarks += [f"{entry.name}: {remark}" for remark in sowing.remarks]
-        profile = profiles[entry.name]
-        made, found = make_entry(
-            entry.name, entry.label or profile.label, profile, sowing.dates, axis, run_file.seasons.years,
-            area=area, co2=run_file.co2, stages=entry.stages, options=options,
-        )  # fmt: skip
-        faults += found
-        if made is not None:
-            job.entries.append(made)
-            remarks += made.remarks
+        found: list[Fault] = []
+        _lay_entry(job, entry, profiles.get(entry.name), found)
+        faults += [in_run_file(fault, run_file, entry.name) for fault in found]
     if faults:
-        raise InputError(faults)
+        raise InputError(in_run_file(fault, run_file) for fault in faults)
     return job
+
+
+def _chosen(run_file: RunFile, only: str | None, faults: list[Fault]) -> list[CropEntry]:
+    """Return the crop entries to take."""
+    if only is None:
+        return list(run_file.crops)
+    entries = [entry for entry in run_file.crops if entry.name == only]
+    if not entries:
+        names = [entry.name for entry in run_file.crops]
+        near = nearest(only, names)
+        remedy = f"Did you mean '{near}'?" if near else f"The entries are {', '.join(names) or 'none'}."
+        raise InputError([*faults, Fault(f"there is no crop entry '{only}'", run_file.path.name, remedy)])
+    return entries
+
+
+def _lay_entry(job: Job, entry: CropEntry, profile: CropProfile | None, faults: list[Fault]) -> None:
+    """Lay a crop entry on the grid and add it to the job, or note its faults."""
+    run_file, dataset = job.run_file, job.dataset
+    spec = entry.sowing_spec()
+    if not isinstance(spec, str) and "table" in spec and job.districts is None:
+        faults += sowing_faults(spec, run_file.base)  # that there are no districts is told already
+        sowing = None
+    else:
+        sowing = _collect(faults, read_sowing, spec, dataset, job.districts, run_file.base)
+    where = entry.area_spec()
+    area = _collect(faults, read_area, where, dataset, run_file.base) if where is not None else None
+    if area is not None:
+        job.areas[entry.name] = area
+    if sowing is None or profile is None:
+        return
+    job.sowing_words[entry.name] = sowing.words
+    job.remarks += [f"{entry.name}: {remark}" for remark in sowing.remarks]
+    made, found = make_entry(
+        entry.name, entry.label or profile.label, profile, sowing.dates, job.axis, run_file.seasons.years,
+        area=area, co2=run_file.co2, stages=entry.stages, options=job.options,
+    )  # fmt: skip
+    faults += [replace(fault, what=f"{fault.what} ({sowing.words})") for fault in found]
+    if made is None:
+        return
+    job.entries.append(made)
+    job.remarks += made.remarks
+    if not (made.grown & (made.sowing >= 0).any(axis=0)).any():
+        job.remarks.append(f"{entry.name}: no cell is computed, for where it is sown its crop area is zero")
 
 
 def _collect(faults: list[Fault], call: Callable[..., Any], *arguments: Any) -> Any:
@@ -138,20 +169,23 @@ def _collect(faults: list[Fault], call: Callable[..., Any], *arguments: Any) -> 
         return None
 
 
-def _through(dataset: xr.Dataset, run_file: RunFile, faults: list[Fault]) -> xr.Dataset:
+def _through(dataset: xr.Dataset, run_file: RunFile, faults: list[Fault], remarks: list[str]) -> xr.Dataset:
     through = run_file.seasons.through
     if through is None:
         return dataset
     axis = time_axis(dataset)
-    last = axis.number_of(through)
-    if last < 0:
-        faults.append(
-            Fault(
-                f"{through} lies before the first day of the data, {axis.iso(0)}", "[seasons] through",
-                "Give a date within the data, or leave it out.",
-            )  # fmt: skip
-        )
+    remedy = "Give a date within the data, or leave it out."
+    try:
+        last = axis.number_of(through)
+    except ValueError:
+        faults.append(Fault(f"there is no day {through} in the calendar of the data", "seasons.through", remedy))
         return dataset
+    if last < 0:
+        what = f"{through} lies before the first day of the data, {axis.iso(0)}"
+        faults.append(Fault(what, "seasons.through", remedy))
+        return dataset
+    if last >= axis.length:
+        remarks.append(f"seasons.through, {through}, lies after the last day of the data, {axis.iso(axis.length - 1)}")
     return dataset.isel(time=slice(0, last + 1))
 
 
@@ -200,129 +234,62 @@ def run(
     Raises
     ------
     InputError
-        With all faults of the run file, the profiles, the grids, the places and the output folder.
+        With all faults of the run file, the profiles, the grids, the places and the output folder; or, when a
+        file cannot be written in the end, with what is kept.
     """
     started = datetime.datetime.now(datetime.UTC)
     clock = time.monotonic()
-    job = prepare(path, only)
+    job = prepare(path, only, out, writes=True)
     run_file = job.run_file
     folder = Path(out) if out is not None else run_file.output_folder
     resolved = run_file.resolved()
+    inputs = input_records(input_files(job), run_file.base)
     claim_folder(folder, run_file.title, resolved)
     say = progress or (lambda _what, _share: None)
-    results, computed = compute_results(
-        job.dataset, job.entries, job.options, job.attributes(), threads=threads or run_file.compute.threads,
-        progress=lambda share: say("computing", share),
-    )  # fmt: skip
+    with weather_told(job.weather, run_file.base):
+        results, computed = compute_results(
+            job.dataset, job.entries, job.options, job.attributes(), threads=threads or run_file.compute.threads,
+            progress=lambda share: say("computing", share),
+        )  # fmt: skip
     remarks = job.remarks + mend_words(computed.counts)
     record = {
         "run_file": resolved,
-        "inputs": [file_record(file) for file in job.weather.paths],
+        "inputs": inputs,
         "counts": computed.counts,
         "remarks": remarks,
         "seconds": round(time.monotonic() - clock, 1),
         "started": started.isoformat(timespec="seconds"),
     }
-    drawn = 0
+    drawn: list[str] = []
     expected = len(results) * (4 + 2 * len(run_file.seasons.years) * (4 + len(run_file.maps.measures)))
 
-    def written(_name: str) -> None:
-        nonlocal drawn
-        drawn += 1
-        say("writing", min(drawn / expected, 1.0))
+    def written(name: str) -> None:
+        drawn.append(name)
+        say("writing", min(len(drawn) / expected, 1.0))
 
-    report = write_report(
-        results, folder, title=run_file.title, measures=run_file.maps.measures, areas=job.areas,
-        history=f"{started.date().isoformat()} cropstress run {Path(path).name}", record=record,
-        progress=written,
-    )  # fmt: skip
+    history = f"{started.date().isoformat()} cropstress run {Path(path).name}"
+    try:
+        report = write_report(
+            results, folder, title=run_file.title, measures=run_file.maps.measures, areas=job.areas, history=history,
+            record=record, progress=written,
+        )  # fmt: skip
+    except InputError as error:
+        raise with_what_is_kept(error, results, folder, drawn, history) from error
     return Outcome(folder, summary_text(summarise(results, job.areas)), remarks + report.remarks, results)
 
 
-def check(path: str | Path) -> list[str]:
-    """Say what a run file would compute, without computing it.
-
-    Returns
-    -------
-    list of str
-        Lines for the screen.
-
-    Raises
-    ------
-    InputError
-        With everything that is wrong.
-    """
-    job = prepare(path)
-    check_folder(job.run_file.output_folder, job.run_file.title)
-    lines = [job.run_file.title, "", "Found"]
-    for variable in job.weather.found:
-        low, high = variable.sample_range
-        lines.append(
-            f"  {variable.canonical}: {variable.name} in {', '.join(variable.files)} ({variable.reason}); "
-            f"unit {variable.unit}, {variable.conversion}; {low:.4g} to {high:.4g} on the days looked at"
-        )
-    rows, columns = job.dataset["tmax"].shape[1:]
-    lines += [
-        f"  {rows} x {columns} cells, {job.axis.length} days from {job.axis.iso(0)} to "
-        f"{job.axis.iso(job.axis.length - 1)} ({job.axis.calendar} calendar)",
-        "",
-        "To be computed",
-    ]
-    for entry in job.entries:
-        lines += _entry_lines(job, entry)
-    plan = make_plan(job.dataset)
-    threads = job.run_file.compute.threads
-    lines += [
-        "",
-        f"The map is cut into {len(plan.tiles)} tiles and {len(plan.blocks)} blocks of days; "
-        + ("all cores work." if threads is None else f"{threads} threads work."),
-        f"Results go to {job.run_file.resolved()['output']['folder']}.",
-    ]
-    if job.weather.not_computed:
-        lines += ["", "Not computed", *(f"  {reason}" for reason in job.weather.not_computed)]
-    if job.remarks:
-        lines += ["", "Remarks", *(f"  {remark}" for remark in job.remarks)]
-    lines += ["", "All settings", *_setting_lines(job.run_file.resolved())]
-    return lines
-
-
-def _entry_lines(job: Job, entry: Entry) -> list[str]:
-    crop = entry.profile
-    computed = int((entry.grown & (entry.sowing >= 0).any(axis=0)).sum())
-    lines = [
-        f"  {entry.name} ({entry.label}, {crop.pathway}): {computed} cells; sown {job.sowing_words[entry.name]}",
-        f"    heat onset {crop.number('heat_onset'):g} degC (air, momentary), "
-        f"hot day above {crop.number('hot_day_limit'):g} degC, "
-        + (
-            f"at flowering above {crop.number('flowering_limit'):g} degC"
-            if crop.flowering_window is not None
-            else "no flowering window"
-        ),
-    ]
-    for season, year in enumerate(entry.years):
-        sown = entry.sowing[season][entry.sowing[season] >= 0]
-        first, last = int(sown.min()), int(sown.max())
-        end = last + sum(crop.days) - 1
-        if entry.stages == "thermal_time":
-            until = "until its thermal time is reached"
-        elif end < job.axis.length:
-            until = f"until {job.axis.iso(end)} at the latest"
-        else:
-            until = f"cut short by the end of the data on {job.axis.iso(job.axis.length - 1)}"
-        between = job.axis.iso(first) if first == last else f"{job.axis.iso(first)} to {job.axis.iso(last)}"
-        lines.append(f"    season {year}: sown {between}, {until}; CO2 {entry.co2[season]:g} umol/mol")
-    lines.append("    soil water is assumed plentiful")
-    return lines
-
-
-def _setting_lines(resolved: dict[str, Any], prefix: str = "") -> list[str]:
-    lines = []
-    for key, value in resolved.items():
-        if isinstance(value, dict) and value:
-            lines += _setting_lines(value, f"{prefix}{key}.")
-        elif isinstance(value, list) and value and isinstance(value[0], dict):
-            for number, part in enumerate(value, 1):
-                lines += _setting_lines(part, f"{prefix}{key}[{number}].")
-        else:
-            lines.append(f"  {prefix}{key} = {value}")
-    return lines
+def input_files(job: Job) -> list[Path]:
+    """Return every file the results depend on, each once: weather, elevation, places, profiles of one's own."""
+    run_file = job.run_file
+    computed = {entry.name for entry in job.entries}
+    named = [run_file.places.districts]
+    for entry in run_file.crops:
+        if entry.name not in computed:
+            continue
+        sowing, area = entry.sowing_spec(), entry.area_spec()
+        if isinstance(sowing, dict):
+            named.append(sowing.get("grid") or sowing.get("table"))
+        named.append(area["file"] if isinstance(area, dict) else area)
+        named.append(entry.profile if is_profile_path(entry.profile) else None)
+    places = [path for name in named if name is not None for path in find_files(name, run_file.base)[0]]
+    return list(dict.fromkeys([*job.weather.paths, *places]))

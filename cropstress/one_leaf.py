@@ -7,10 +7,12 @@ import xarray as xr
 from numpy.typing import ArrayLike
 
 from cropstress.crops import CropProfile, load_crop
+from cropstress.day.worlds import losses_of_blocks
 from cropstress.errors import Fault, InputError
 from cropstress.leaf import solve
 from cropstress.leaf.parameters import leaf_record
-from cropstress.leaf.single import leaf_lanes, solve_lanes
+from cropstress.leaf.single import in_blocks, leaf_lanes, solve_lanes
+from cropstress.season.measures import CAUSES
 
 # What is physically possible: name, lowest, highest, unit.
 _RANGES = {
@@ -22,6 +24,7 @@ _RANGES = {
     "pressure": (20.0, 120.0, "kPa"),
     "net_longwave": (-300.0, 300.0, "W m-2"),
 }
+_RATE_UNIT = "umol m-2 s-1"
 _UNITS = {
     "assimilation": ("umol m-2 s-1", solve.ASSIMILATION),
     "respiration": ("umol m-2 s-1", solve.RESPIRATION),
@@ -79,12 +82,62 @@ def gas_exchange(
     InputError
         For an unknown crop, or values that are missing or physically impossible.
     """
-    profile = load_crop(crop) if isinstance(crop, str) else crop
-    given = {
-        "air_temperature": air_temperature, "vapour_pressure": vapour_pressure, "photons": photons, "co2": co2,
-        "wind": wind, "pressure": pressure, "net_longwave": net_longwave,
+    profile, lanes, shape = _one_leaf(
+        crop, growth_temperature, air_temperature=air_temperature, vapour_pressure=vapour_pressure,
+        photons=photons, co2=co2, wind=wind, pressure=pressure, net_longwave=net_longwave,
+    )  # fmt: skip
+    record = leaf_record(profile)
+    answers = solve_lanes(record, lanes)
+    rows = {name: (unit, answers[row]) for name, (unit, row) in _UNITS.items()}
+    without = solve_lanes(record, lanes, 0.0)[solve.ASSIMILATION]
+    rows["assimilation_without_oxygenation"] = (_RATE_UNIT, without)
+    return _labelled(rows, shape, profile)
+
+
+def heat_loss(
+    crop: CropProfile | str,
+    air_temperature: ArrayLike,
+    vapour_pressure: ArrayLike,
+    photons: ArrayLike,
+    co2: ArrayLike = 421.0,
+    wind: ArrayLike = 2.0,
+    pressure: ArrayLike = 101.3,
+    net_longwave: ArrayLike = 0.0,
+    growth_temperature: ArrayLike | None = None,
+) -> xr.Dataset:
+    """What air above the crop's heat onset costs one top leaf at one moment, and by which causes.
+
+    Parameters, errors and dimensions are those of `gas_exchange`.
+
+    Returns
+    -------
+    xarray.Dataset
+        lost_to_heat and lost_to_heat_by_photorespiration, _by_stomata, _by_enzymes and _by_respiration, which add
+        up to it [umol m-2 s-1]; exactly 0 at and below the onset. Attribute heat_onset [degC].
+    """
+    profile, lanes, shape = _one_leaf(
+        crop, growth_temperature, air_temperature=air_temperature, vapour_pressure=vapour_pressure,
+        photons=photons, co2=co2, wind=wind, pressure=pressure, net_longwave=net_longwave,
+    )  # fmt: skip
+    blocks = in_blocks(lanes)
+    losses = np.empty((len(blocks), 1 + len(CAUSES), solve.LANES))
+    onset = profile.number("heat_onset")
+    losses_of_blocks(leaf_record(profile), onset, blocks, losses)
+    names = ["lost_to_heat", *(f"lost_to_heat_by_{cause}" for cause in CAUSES)]
+    rows = {
+        name: (_RATE_UNIT, losses[:, row].ravel()[: lanes.shape[1]]) for row, name in enumerate(names)
     }  # fmt: skip
-    arrays = dict(zip(given, np.broadcast_arrays(*(np.asarray(value, float) for value in given.values())), strict=True))
+    return _labelled(rows, shape, profile).assign_attrs(heat_onset=onset)
+
+
+def _one_leaf(
+    crop: CropProfile | str, growth_temperature: ArrayLike | None, **given: ArrayLike
+) -> tuple[CropProfile, np.ndarray, tuple[int, ...]]:
+    """Return the profile, the leaves as the rows of `solve`, and the shape of the arguments."""
+    profile = load_crop(crop) if isinstance(crop, str) else crop
+    arrays = dict(
+        zip(given, np.broadcast_arrays(*(np.asarray(value, float) for value in given.values())), strict=True)
+    )
     faults = [fault for name, values in arrays.items() if (fault := _range_fault(name, values))]
     if faults:
         raise InputError(faults)
@@ -92,18 +145,18 @@ def gas_exchange(
     if growth_temperature is None:
         growth_temperature = profile.number("growth_temperature") if profile.pathway == "C3" else 25.0
     growth = np.broadcast_to(np.asarray(growth_temperature, float), shape)
-    lanes = leaf_lanes(*(arrays[name].ravel() for name in given), growth.ravel())
-    record = leaf_record(profile)
-    answers = solve_lanes(record, lanes)
-    without = solve_lanes(record, lanes, 0.0)
+    return profile, leaf_lanes(*(array.ravel() for array in (*arrays.values(), growth))), shape
+
+
+def _labelled(
+    rows: dict[str, tuple[str, np.ndarray]], shape: tuple[int, ...], profile: CropProfile
+) -> xr.Dataset:
+    """Return answers as a dataset in the shape of the arguments."""
     dims = tuple(f"dim_{number}" for number in range(len(shape)))
-    variables = {
-        name: (dims, answers[row].reshape(shape), {"units": unit}) for name, (unit, row) in _UNITS.items()
-    }
-    variables["assimilation_without_oxygenation"] = (
-        dims, without[solve.ASSIMILATION].reshape(shape), {"units": "umol m-2 s-1"},
-    )  # fmt: skip
-    return xr.Dataset(variables, attrs={"crop": profile.name, "pathway": profile.pathway})
+    return xr.Dataset(
+        {name: (dims, values.reshape(shape), {"units": unit}) for name, (unit, values) in rows.items()},
+        attrs={"crop": profile.name, "pathway": profile.pathway},
+    )
 
 
 def _range_fault(name: str, values: np.ndarray) -> Fault | None:

@@ -11,12 +11,17 @@ import xarray as xr
 
 from cropstress.day import block
 from cropstress.errors import fail
-from cropstress.job import prepare
+from cropstress.job import Job, prepare
 from cropstress.region import Entry, TimeAxis, make_plan
-from cropstress.region.compute import compute
+from cropstress.region.compute import VARIABLES, compute, ground_of, has_gas_exchange, load_block
 from cropstress.region.plan import Plan
+from cropstress.region.results import gather, make_result
+from cropstress.report import notes as travelling
 from cropstress.report.curves import trace_figure
+from cropstress.report.phrases import phrase
+from cropstress.report.summary import place_words
 from cropstress.report.writing import written_aside
+from cropstress.run_faults import weather_told
 from cropstress.season import layout as at
 from cropstress.season.measures import STAGES
 from cropstress.weather import cell_latitude_longitude
@@ -36,6 +41,9 @@ _COLUMNS = {
     "hot_hours": at.DAILY_HOT_HOURS,
     "growth_temperature": at.DAILY_GROWTH_TEMPERATURE,
 }
+_NO_LEAF = 1e29  # the kernel's highest and lowest of nothing are 1e30
+
+_NO_LEAF = -1e29  # degC: a day without leaf area has no leaf temperature
 
 
 def nearest_cell(latitude: np.ndarray, longitude: np.ndarray, wanted: tuple[float, float]) -> tuple[int, float]:
@@ -73,8 +81,7 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
     job = prepare(path)
     latitude, longitude = cell_latitude_longitude(job.dataset)
     cell, distance = nearest_cell(latitude, longitude, place)
-    rows, columns = latitude.shape
-    row, column = divmod(cell, columns)
+    row, column = divmod(cell, latitude.shape[1])
     reach = _cell_size(latitude, longitude, row, column)
     if distance > reach:
         raise fail(
@@ -83,31 +90,15 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
             f"Give a place within the grid: latitude {latitude.min():.2f} to {latitude.max():.2f}, "
             f"longitude {longitude.min():.2f} to {longitude.max():.2f}.",
         )
-    one = job.dataset.isel({name: slice(number, number + 1) for name, number in zip(
-        job.dataset["tmax"].dims[1:], (row, column), strict=True)})  # fmt: skip
+    space = zip(job.dataset["tmax"].dims[1:], (row, column), strict=True)
+    one = job.dataset.isel({name: slice(number, number + 1) for name, number in space})
     folder = Path(out) if out is not None else job.run_file.output_folder / "trace"
-    written = []
+    stem = f"{abs(place[0]):g}{'N' if place[0] >= 0 else 'S'}-{abs(place[1]):g}{'E' if place[1] >= 0 else 'W'}"
+    written: list[Path] = []
     for entry in job.entries:
         single = _at_cell(entry, cell)
-        if not (single.grown & (single.sowing >= 0).any(axis=0)).any():
-            continue
-        plan = Plan(make_plan(one).blocks, [(0, 1, 0, 1)])
-        state = compute(one, [single], plan, job.axis, threads=1, keep_daily=True).tiles[entry.name][0]
-        daily = np.concatenate(state.daily, axis=1)[0, :, :, 0]
-        table = _table(daily, one, job.axis)
-        window = _flowering_rows(state.totals[0], entry, table)
-        stem = f"{entry.name}-{abs(place[0]):g}{'N' if place[0] >= 0 else 'S'}-{abs(place[1]):g}{'E' if place[1] >= 0 else 'W'}"
-        table_path = folder / f"{stem}.csv"
-        with written_aside(table_path) as aside:
-            table.to_csv(aside, index=False)
-        figure_path = folder / f"{stem}.png"
-        trace_figure(
-            table, figure_path, label=entry.label,
-            place=f"{latitude[row, column]:.3f}, {longitude[row, column]:.3f}",
-            heat_onset=float(entry.season["heat_onset"][0]), hot_day_limit=float(entry.season["hot_day_limit"][0]),
-            flowering_window=window,
-        )  # fmt: skip
-        written += [table_path, figure_path]
+        if (single.grown & (single.sowing >= 0).any(axis=0)).any():
+            written += _trace_entry(job, single, one, folder / f"{entry.name}-{stem}")
     if not written:
         raise fail(
             "no crop entry grows in this cell", f"place {place[0]:g}, {place[1]:g}",
@@ -116,13 +107,44 @@ def trace(path: str | Path, place: tuple[float, float], out: str | Path | None =
     return written
 
 
+def _trace_entry(job: Job, entry: Entry, one: xr.Dataset, stem: Path) -> list[Path]:
+    """Compute a crop entry on one cell and write its days."""
+    plan = Plan(make_plan(one).blocks, [(0, 1, 0, 1)])
+    with weather_told(job.weather, job.run_file.base):
+        computed = compute(one, [entry], plan, job.axis, threads=1, keep_daily=True)
+    state = computed.tiles[entry.name][0]
+    result = make_result(
+        entry, gather(entry, [state], 1, computed.observed), one, job.axis, job.options, has_gas_exchange(one),
+        job.attributes(),
+    )  # fmt: skip
+    totals = state.totals[0, :, :, 0]
+    table = _table(np.concatenate(state.daily, axis=1)[0, :, :, 0], totals, entry, one, job.axis)
+    notes = [travelling.assumptions(result)]
+    credit = travelling.attribute(result, "credit")
+    if credit is not None:
+        notes.append(phrase("assumptions.credit", value=travelling.as_text(credit)))
+    written = [stem.with_name(f"{stem.name}.csv"), stem.with_name(f"{stem.name}.png")]
+    with written_aside(written[0]) as aside:
+        # The notes once: a column of them would bury the numbers
+        first = pd.Series([" ".join([*notes, travelling.caution(result)])], name="notes")
+        pd.concat([table, first], axis=1).to_csv(aside, index=False)
+    trace_figure(
+        table, written[1], label=entry.label, place=place_words(result, 0, 0),
+        heat_onset=float(entry.season["heat_onset"][0]), hot_day_limit=float(entry.season["hot_day_limit"][0]),
+        flowering_window=_flowering_rows(totals, entry, table), notes=notes,
+    )  # fmt: skip
+    return written
+
+
 def _cell_size(latitude: np.ndarray, longitude: np.ndarray, row: int, column: int) -> float:
     """Return the distance to the farthest neighbour of a cell, at least 25 km [km]."""
     rows, columns = latitude.shape
     largest = 25.0
+    here = (latitude[row, column], longitude[row, column])
     for r, c in ((row + 1, column), (row - 1, column), (row, column + 1), (row, column - 1)):
         if 0 <= r < rows and 0 <= c < columns:
-            _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], (latitude[row, column], longitude[row, column]))
+            here = (latitude[row, column], longitude[row, column])
+            _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], here)
             largest = max(largest, step)
     return largest
 
@@ -132,29 +154,38 @@ def _at_cell(entry: Entry, cell: int) -> Entry:
     return replace(entry, sowing=entry.sowing[:, cell : cell + 1], grown=entry.grown[cell : cell + 1])
 
 
-def _table(daily: np.ndarray, one: xr.Dataset, axis: TimeAxis) -> pd.DataFrame:
-    """Return the days of the seasons, a row a day."""
-    growing = np.isfinite(daily[:, at.DAILY_STAGE])
-    days = np.nonzero(growing)[0]
+def _table(
+    daily: np.ndarray, totals: np.ndarray, entry: Entry, one: xr.Dataset, axis: TimeAxis
+) -> pd.DataFrame:
+    """Return the days of the seasons, a row a day: the weather as it was used, and what the day gave."""
+    days = np.nonzero(np.isfinite(daily[:, at.DAILY_STAGE]))[0]
+    sown = totals[np.isfinite(totals[:, at.SOWING]), at.SOWING]
+    years = np.array(entry.years)[np.isfinite(totals[:, at.SOWING])]
     columns: dict[str, object] = {
         "date": [axis.iso(int(day)) for day in days],
+        "season": years[np.searchsorted(sown, days, side="right") - 1],
         "stage": [STAGES[int(stage)] for stage in daily[days, at.DAILY_STAGE]],
     }
-    for name in ("tmax", "tmin", "vapour_pressure", "radiation"):
-        if name in one:
-            columns[name] = np.asarray(one[name].values, dtype=float).ravel()[days]
+    weather = load_block(one, axis, ground_of(one), 0, axis.length).weather[:, :, 0]
+    gas = has_gas_exchange(one)
+    for number, name in enumerate(VARIABLES):
+        if name in one or (gas and name in ("wind", "pressure")):
+            columns[name] = weather[number, days]
     for name, row in _COLUMNS.items():
-        columns[name] = daily[days, row]
+        if name == "growth_temperature" and entry.profile.pathway != "C3":
+            continue
+        values = daily[days, row]
+        # A day without leaves has no leaf temperature
+        columns[name] = np.where(np.abs(values) < _NO_LEAF, values, np.nan)
     return pd.DataFrame(columns)
 
 
 def _flowering_rows(totals: np.ndarray, entry: Entry, table: pd.DataFrame) -> tuple[int, int] | None:
     """Return the first and last row of the last season's flowering window."""
-    flowering, sowing = totals[-1, at.FLOWERING, 0], totals[-1, at.SOWING, 0]
+    flowering, sowing = totals[-1, at.FLOWERING], totals[-1, at.SOWING]
     if not entry.season["flowers"][0] or not flowering >= 0:
         return None
-    before = len(table) - int(totals[-1, at.SEASON_DAYS, 0])
+    before = len(table) - int(totals[-1, at.SEASON_DAYS])
     first = before + int(flowering - sowing + entry.season["window_start"][0])
     last = before + int(flowering - sowing + entry.season["window_end"][0])
     return (max(first, 0), min(last, len(table) - 1)) if first < len(table) else None
-

@@ -7,6 +7,7 @@ Positions inside formulas are shares of the region, from 0 to 1: `east` of its w
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import shapely
@@ -69,7 +70,9 @@ class Land:
     dryness: np.ndarray
 
 
-def gaussian(east: np.ndarray, north: np.ndarray, centre: tuple[float, float], radii: tuple[float, float]):
+def gaussian(
+    east: np.ndarray, north: np.ndarray, centre: tuple[float, float], radii: tuple[float, float]
+) -> np.ndarray:
     """Bell of height 1 around a centre, with its radii given as shares of the region."""
     return np.exp(-(((east - centre[0]) / radii[0]) ** 2) - ((north - centre[1]) / radii[1]) ** 2)
 
@@ -176,7 +179,7 @@ def maize_sowing_day(land: Land, texture: np.ndarray) -> np.ndarray:
     return np.where(land.is_land, np.rint(np.clip(day, 106.0, 128.0)), np.nan)
 
 
-def district_shapes() -> dict[str, dict]:
+def district_shapes() -> dict[str, dict[str, Any]]:
     """District outlines by code, as GeoJSON geometries in degrees, rounded to 0.0001.
 
     Two wavy lines cut the land into three strips, and shorter ones cut the strips into districts; a piece is

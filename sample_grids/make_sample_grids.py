@@ -34,7 +34,7 @@ import csv
 import json
 import sys
 from pathlib import Path
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 import xarray as xr
@@ -165,7 +165,7 @@ def add_variable(
 ) -> None:
     """Add values as packed whole numbers; the packing's offset is only added when the file is read."""
     dimensions = ("time", "lat", "lon")[-values.ndim :]
-    unpacking = {"_FillValue": np.int16(MISSING)}
+    unpacking: dict[str, object] = {"_FillValue": np.int16(MISSING)}
     if packing != Packing(1.0):
         unpacking |= {"scale_factor": packing.step, "add_offset": packing.offset}
     packed = np.where(np.isnan(values), MISSING, np.rint(values / packing.step)).astype(np.int16)
@@ -174,7 +174,7 @@ def add_variable(
 
 def write(dataset: xr.Dataset, path: Path) -> None:
     """Write as NetCDF-4, compressed; the data are packed already, so nothing is encoded on the way."""
-    encoding: dict[str, dict] = {str(name): {"_FillValue": None} for name in dataset.variables}
+    encoding: dict[str, dict[str, Any]] = {str(name): {"_FillValue": None} for name in dataset.variables}
     for name, variable in dataset.data_vars.items():
         if variable.dtype == np.int16:
             chunks = tuple(

@@ -190,7 +190,8 @@ def value_faults(value: Value, quantity: Quantity, place: str) -> list[Fault]:
         ]
     faults = []
     for kind, number in (("value", value.value), ("low", value.low), ("high", value.high)):
-        if not quantity.lowest <= number <= quantity.highest:
+        told = kind != "value" and number == value.value  # a range widened to hold the value is at fault with it
+        if not told and not quantity.lowest <= number <= quantity.highest:
             faults.append(
                 Fault(
                     f"{kind} = {number:g} {value.unit} is outside the physical range "

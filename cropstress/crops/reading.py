@@ -33,7 +33,10 @@ _BOUNDS = {
     "less_than_equal": ("le", "a number not above"),
     "greater_than": ("gt", "a number above"),
 }
-_BACKSLASH = "Write paths with forward slashes, \"grids/tmax.nc\", or in single quotes, 'grids\\tmax.nc'."
+_BACKSLASH = (
+    'Write paths with forward slashes, on Windows too: "grids/tmax.nc"; put other text with backslashes in '
+    "single quotes."
+)
 
 
 def read_toml(path: Path, shown: str) -> dict[str, Any]:
@@ -80,7 +83,7 @@ def _syntax_fault(error: tomllib.TOMLDecodeError, text: str, shown: str) -> Faul
     reason = re.sub(r" \(at .*\)$", "", str(error))
     where = f"{shown}, line {number}"
     if re.search(r'"[^"]*\\', line):
-        what = f"this is not TOML ({reason}); a backslash in double quotes is not a plain character: {line}"
+        what = f"this is not TOML, for a backslash in double quotes is no plain character ({reason}): {line}"
         return Fault(what, where, _BACKSLASH)
     return Fault(f"this is not TOML ({reason}): {line}", where, "Check quotes, brackets and = of this line.")
 

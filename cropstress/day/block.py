@@ -11,6 +11,7 @@ import numpy as np
 
 from cropstress.compiled import inlined, kernel
 from cropstress.day import canopy, course
+from cropstress.day.worlds import causes_at, solve_worlds
 from cropstress.leaf import solve
 from cropstress.leaf.air import dew_point
 from cropstress.leaf.responses import leaf_respiration
@@ -60,7 +61,6 @@ DAYTIME_DEFICIT = 11  # mean of the air [kPa]
 DAY_ANSWERS = 12
 
 _MOLES = 3600.0e-6  # mol m-2 per h of 1 umol m-2 s-1
-_NO_GROSS = 1e-9  # umol m-2 s-1: below it a leaf without oxygenation fixes nothing
 
 
 @inlined
@@ -199,7 +199,6 @@ def crop_day_of_block(leaf, heat_onset, decline, single_leaf, cells, sky, crop_c
         Written, per ground area (per leaf area for a single leaf).
     """
     lanes = np.empty((solve.LEAF_INPUTS, solve.LANES))
-    cool = np.empty((solve.LEAF_INPUTS, solve.LANES))
     actual = np.empty((solve.LEAF_OUTPUTS, solve.LANES))
     actual_open = np.empty((solve.LEAF_OUTPUTS, solve.LANES))
     cooled = np.empty((solve.LEAF_OUTPUTS, solve.LANES))
@@ -215,7 +214,6 @@ def crop_day_of_block(leaf, heat_onset, decline, single_leaf, cells, sky, crop_c
     for sunlit in (True, False):
         if single_leaf and not sunlit:
             break
-        hot = False
         for lane in range(solve.LANES):
             cell = lane % CELLS
             air = sky[0, lane]
@@ -234,27 +232,9 @@ def crop_day_of_block(leaf, heat_onset, decline, single_leaf, cells, sky, crop_c
             lanes[solve.PRESSURE, lane] = cells[PRESSURE, cell]
             lanes[solve.CO2, lane] = crop_cells[CO2, cell]
             lanes[solve.GROWTH_TEMPERATURE, lane] = crop_cells[GROWTH_TEMPERATURE, cell]
-            hot = hot or air > heat_onset
-        solve.solve_leaves(leaf, lanes, 1.0, actual)
-        solve.solve_leaves(leaf, lanes, 0.0, actual_open)
-        if hot:
-            cool[:, :] = lanes
-            for lane in range(solve.LANES):
-                air = min(lanes[solve.AIR_TEMPERATURE, lane], heat_onset)
-                humidity = min(lanes[solve.VAPOUR_PRESSURE, lane], course.saturation(air))
-                cool[solve.AIR_TEMPERATURE, lane] = air
-                cool[solve.VAPOUR_PRESSURE, lane] = humidity
-                cool[solve.DEW_POINT, lane] = min(dew_point(humidity), air)
-            solve.solve_leaves(leaf, cool, 1.0, cooled)
-            solve.solve_leaves(leaf, cool, 0.0, cooled_open)
-            solve.gross_without_oxygenation(
-                leaf, lanes, cooled_open[solve.LEAF_TEMPERATURE], actual_open[solve.DEFICIT],
-                cooled_open[solve.ASSIMILATION], mixed_dry,
-            )  # fmt: skip
-            solve.gross_without_oxygenation(
-                leaf, lanes, actual_open[solve.LEAF_TEMPERATURE], cooled_open[solve.DEFICIT],
-                actual_open[solve.ASSIMILATION], mixed_warm,
-            )  # fmt: skip
+        solve_worlds(
+            leaf, heat_onset, lanes, actual, actual_open, cooled, cooled_open, mixed_dry, mixed_warm
+        )  # fmt: skip
         for lane in range(solve.LANES):
             cell = lane % CELLS
             moles = DAY_WEIGHTS[lane // CELLS] * daylight[cell] * area[lane] * _MOLES
@@ -271,13 +251,9 @@ def crop_day_of_block(leaf, heat_onset, decline, single_leaf, cells, sky, crop_c
                 answers[LARGEST_LEAF_EXCESS, cell] = max(answers[LARGEST_LEAF_EXCESS, cell], excess)
                 answers[SMALLEST_LEAF_EXCESS, cell] = min(answers[SMALLEST_LEAF_EXCESS, cell], excess)
             if lanes[solve.AIR_TEMPERATURE, lane] > heat_onset:
-                by_photorespiration, by_stomata, by_enzymes, by_respiration = causes(
-                    rate, actual[solve.RESPIRATION, lane],
-                    cooled[solve.ASSIMILATION, lane], cooled[solve.RESPIRATION, lane],
-                    actual_open[solve.ASSIMILATION, lane] + actual_open[solve.RESPIRATION, lane],
-                    cooled_open[solve.ASSIMILATION, lane] + cooled_open[solve.RESPIRATION, lane],
-                    mixed_dry[lane], mixed_warm[lane],
-                )  # fmt: skip
+                by_photorespiration, by_stomata, by_enzymes, by_respiration = causes_at(
+                    lane, actual, actual_open, cooled, cooled_open, mixed_dry, mixed_warm
+                )
                 answers[LOST_TO_HEAT, cell] += moles * (cooled[solve.ASSIMILATION, lane] - rate)
                 answers[BY_PHOTORESPIRATION, cell] += moles * by_photorespiration
                 answers[BY_STOMATA, cell] += moles * by_stomata
@@ -303,22 +279,3 @@ def crop_day_of_block(leaf, heat_onset, decline, single_leaf, cells, sky, crop_c
         answers[ASSIMILATION, cell] -= respired
         answers[LOST_TO_HEAT, cell] += respired - cool_respired
         answers[BY_RESPIRATION, cell] += respired - cool_respired
-
-
-@inlined
-def causes(rate, respiration, cool_rate, cool_respiration, open_gross, cool_open_gross, mixed_dry, mixed_warm):  # type: ignore[no-untyped-def]
-    """Split the loss of one leaf at one moment into its four causes.
-
-    The Shapley (1953) values of two two-factor games: kept share x potential, then dryness x temperature.
-    `mixed_dry` is the gross rate without oxygenation of a leaf of the cool world in the dry air of the actual
-    one, `mixed_warm` that of the actual leaf in the air of the cool world.
-    """
-    gross = rate + respiration
-    cool_gross = cool_rate + cool_respiration
-    kept = gross / open_gross if open_gross > _NO_GROSS else 1.0
-    cool_kept = cool_gross / cool_open_gross if cool_open_gross > _NO_GROSS else 1.0
-    by_photorespiration = 0.5 * (cool_open_gross + open_gross) * (cool_kept - kept)
-    scale = 0.5 * (cool_kept + kept)
-    by_stomata = 0.5 * ((cool_open_gross - mixed_dry) + (mixed_warm - open_gross))
-    by_enzymes = 0.5 * ((cool_open_gross - mixed_warm) + (mixed_dry - open_gross))
-    return by_photorespiration, scale * by_stomata, scale * by_enzymes, respiration - cool_respiration

@@ -1,11 +1,11 @@
-"""What the air around a leaf does to it: boundary layer, stomata and energy."""
+"""What the air around a leaf does to it: boundary layer, humidity and energy."""
 
 from __future__ import annotations
 
 import math
 
 from cropstress.compiled import inlined
-from cropstress.leaf.responses import ZERO_CELSIUS, saturation_pressure
+from cropstress.leaf.responses import ZERO_CELSIUS
 
 AIR_HEAT_CAPACITY = 29.3  # J mol-1 K-1; Campbell & Norman 1998 (from memory)
 EVAPORATION_HEAT = 44100.0  # J mol-1; Campbell & Norman 1998 (from memory)
@@ -39,28 +39,18 @@ def radiative_conductance(air_temperature: float) -> float:
 
 
 @inlined
-def stomatal_factor(stomatal_slope: float, deficit: float) -> float:
-    """Return 1.6 (1 + g1 / sqrt D); Medlyn et al. 2011, Eq. 11, with the corrigendum of 2012."""
-    return VAPOUR_TO_CO2_STOMATA * (
-        1.0 + stomatal_slope / math.sqrt(max(deficit, SMALLEST_STOMATAL_DEFICIT))
-    )
-
-
-@inlined
 def energy_surplus(
     leaf_temperature: float,
     air_temperature: float,
     deficit: float,
     net_radiation: float,
     sensible_conductance: float,
-    boundary_vapour_conductance: float,
-    stomatal_conductance: float,
-    pressure: float,
+    vapour_conductance: float,
+    inverse_pressure: float,
 ) -> float:
     """Return absorbed minus lost energy of a leaf [W m-2]; zero at its temperature."""
-    vapour = stomatal_conductance * boundary_vapour_conductance / (stomatal_conductance + boundary_vapour_conductance)
     sensible = AIR_HEAT_CAPACITY * sensible_conductance * (leaf_temperature - air_temperature)
-    return net_radiation - sensible - EVAPORATION_HEAT * vapour * deficit / pressure
+    return net_radiation - sensible - EVAPORATION_HEAT * vapour_conductance * deficit * inverse_pressure
 
 
 @inlined
@@ -68,9 +58,3 @@ def dew_point(vapour_pressure: float) -> float:
     """Return the dew point [degC] of a vapour pressure [kPa]; FAO-56 Eq. 3-11, the inverse of Eq. 11."""
     logarithm = math.log(vapour_pressure / 0.6108)
     return 237.3 * logarithm / (17.27 - logarithm)
-
-
-@inlined
-def vapour_deficit(leaf_temperature: float, vapour_pressure: float) -> float:
-    """Return the leaf-to-air vapour pressure deficit [kPa]; negative when dew forms."""
-    return saturation_pressure(leaf_temperature) - vapour_pressure

@@ -34,12 +34,20 @@ def leaf_state(leaf: Any, *arguments: Any) -> Any:
     """State of a leaf at its temperature and light: `c3_state` or `c4_state`."""
 
 
-def enzyme_demand(leaf: Any, *arguments: Any) -> Any:
-    """Net rate limited by enzymes and its slope with intercellular CO2."""
+def state_kept(leaf: Any, *arguments: Any) -> Any:
+    """Write a state into the rows of a workspace."""
 
 
-def light_demand(leaf: Any, *arguments: Any) -> Any:
-    """Net rate limited by electron transport and its slope with intercellular CO2."""
+def state_found(leaf: Any, *arguments: Any) -> Any:
+    """Read a state from the rows of a workspace."""
+
+
+def limiting_rates(leaf: Any, *arguments: Any) -> Any:
+    """Both limiting net rates, by enzymes and by light, at a given intercellular CO2."""
+
+
+def improved_rates(leaf: Any, *arguments: Any) -> Any:
+    """Both limiting net rates nearer to where each meets the stomata by itself."""
 
 
 def net_rate(leaf: Any, *arguments: Any) -> Any:
@@ -51,7 +59,9 @@ def carboxylation(leaf: Any, *arguments: Any) -> Any:
 
 
 _by_pathway(leaf_state, c3.c3_state, c4.c4_state)
-_by_pathway(enzyme_demand, c3.c3_enzyme_demand, c4.c4_enzyme_demand)
-_by_pathway(light_demand, c3.c3_light_demand, c4.c4_light_demand)
+_by_pathway(state_kept, c3.c3_kept, c4.c4_kept)
+_by_pathway(state_found, c3.c3_found, c4.c4_found)
+_by_pathway(limiting_rates, c3.c3_rates, c4.c4_rates)
+_by_pathway(improved_rates, c3.c3_improved_rates, c4.c4_improved_rates)
 _by_pathway(net_rate, c3.c3_net_rate, c4.c4_net_rate)
 _by_pathway(carboxylation, c3.c3_carboxylation, c4.c4_carboxylation)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 from cropstress.compiled import exponential, inlined
 
 GAS_CONSTANT = 8.314  # J mol-1 K-1
@@ -12,10 +14,19 @@ HIGHEST_RESPONSE_TEMPERATURE = 75.0  # degC, chosen here
 
 
 @inlined
-def inverse_temperature_step(leaf_temperature: float) -> float:
-    """Return 1/298.15 K - 1/T [K-1], the argument of every Arrhenius term."""
+def temperature_terms(leaf_temperature: float) -> tuple[float, float]:
+    """Return what all responses of a leaf temperature share, with one division.
+
+    Returns
+    -------
+    tuple
+        1/298.15 K - 1/T [K-1], the argument of every Arrhenius term, and 1 / (T + 237.3) of FAO-56 Eq. 11.
+    """
     limited = min(max(leaf_temperature, LOWEST_RESPONSE_TEMPERATURE), HIGHEST_RESPONSE_TEMPERATURE)
-    return 1.0 / REFERENCE_TEMPERATURE - 1.0 / (limited + ZERO_CELSIUS)
+    kelvin = limited + ZERO_CELSIUS
+    shifted = leaf_temperature + 237.3
+    inverse = 1.0 / (kelvin * shifted)
+    return 1.0 / REFERENCE_TEMPERATURE - inverse * shifted, inverse * kelvin
 
 
 @inlined
@@ -31,10 +42,26 @@ def deactivation_exponent(deactivation: float, entropy: float) -> float:
 
 
 @inlined
-def peaked_arrhenius(activation: float, deactivation: float, exponent_at_25: float, step: float) -> float:
-    """Return the peaked response without its normalisation at 25 degC; Medlyn et al. 2002, Eq. 17."""
-    falling = exponential(exponent_at_25 + deactivation / GAS_CONSTANT * step)
-    return arrhenius(activation, step) / (1.0 + falling)
+def deactivated(deactivation: float, exponent_at_25: float, step: float) -> float:
+    """Return the denominator of the peaked response; Medlyn et al. 2002, Eq. 17.
+
+    The response is Arrhenius / denominator, without its normalisation at 25 degC.
+    """
+    return 1.0 + exponential(exponent_at_25 + deactivation / GAS_CONSTANT * step)
+
+
+@inlined
+def three_inverses(first: float, second: float, third: float) -> tuple[float, float, float]:
+    """Return the inverses of three numbers with one division, which costs as much as ten products."""
+    both = first * second
+    inverse = 1.0 / (both * third)
+    return inverse * second * third, inverse * first * third, inverse * both
+
+
+@inlined
+def peak_normalisation(deactivation: float, entropy: float) -> float:
+    """Return what makes a peaked response 1 at 25 degC; Medlyn et al. 2002, Eq. 17."""
+    return 1.0 + exponential(deactivation_exponent(deactivation, entropy))
 
 
 @inlined
@@ -48,6 +75,12 @@ def leaf_respiration(linear: float, quadratic: float, leaf_temperature: float) -
 def saturation_pressure(temperature: float) -> float:
     """Return the saturation vapour pressure [kPa] at a temperature [degC]; FAO-56 Eq. 11."""
     return 0.6108 * exponential(17.27 * temperature / (temperature + 237.3))
+
+
+@inlined
+def useful_light(leaf: Any, around: Any) -> float:
+    """Return the light that drives photosystem II, I2 [umol m-2 s-1]; von Caemmerer 2000."""
+    return 0.5 * (1.0 - leaf.electron_loss_fraction) * around.photons
 
 
 @inlined

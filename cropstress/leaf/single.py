@@ -13,14 +13,26 @@ PHOTONS_PER_JOULE = 4.57  # umol J-1; McCree 1972 (from memory)
 
 
 @kernel
-def _solve_many(leaves, lanes, oxygenation, answers):  # type: ignore[no-untyped-def]
-    """Solve any number of leaves, a multiple of LANES."""
-    block = np.empty((solve.LEAF_INPUTS, solve.LANES))
-    block_answers = np.empty((solve.LEAF_OUTPUTS, solve.LANES))
-    for first in range(0, lanes.shape[1], solve.LANES):
-        block[:, :] = lanes[:, first : first + solve.LANES]
-        solve.solve_leaves(leaves[0], block, oxygenation, block_answers)
-        answers[:, first : first + solve.LANES] = block_answers
+def solve_blocks(leaves, blocks, oxygenation, answers):  # type: ignore[no-untyped-def]
+    """Solve blocks of leaves, one after the other.
+
+    Parameters
+    ----------
+    leaves : record array (1,) of `C3_LEAF` or `C4_LEAF`
+    blocks : float64 array (n, LEAF_INPUTS, LANES)
+    oxygenation : float
+    answers : float64 array (n, LEAF_OUTPUTS, LANES)
+        Written.
+    """
+    for block in range(blocks.shape[0]):
+        solve.solve_leaves(leaves[0], blocks[block], oxygenation, answers[block])
+
+
+def in_blocks(lanes: np.ndarray) -> np.ndarray:
+    """Cut leaves (LEAF_INPUTS, n) into blocks (blocks, LEAF_INPUTS, LANES); the last is filled with its last leaf."""
+    count = lanes.shape[1]
+    padded = np.pad(lanes, ((0, 0), (0, -count % solve.LANES)), mode="edge")
+    return np.ascontiguousarray(padded.reshape(len(lanes), -1, solve.LANES).swapaxes(0, 1))
 
 
 def solve_lanes(leaves: np.ndarray, lanes: np.ndarray, oxygenation: float = 1.0) -> np.ndarray:
@@ -37,12 +49,10 @@ def solve_lanes(leaves: np.ndarray, lanes: np.ndarray, oxygenation: float = 1.0)
     -------
     float64 array (LEAF_OUTPUTS, n)
     """
-    count = lanes.shape[1]
-    padding = -count % solve.LANES
-    padded = np.ascontiguousarray(np.pad(lanes, ((0, 0), (0, padding)), mode="edge"))
-    answers = np.empty((solve.LEAF_OUTPUTS, count + padding))
-    _solve_many(leaves, padded, oxygenation, answers)
-    return answers[:, :count]
+    blocks = in_blocks(lanes)
+    answers = np.empty((len(blocks), solve.LEAF_OUTPUTS, solve.LANES))
+    solve_blocks(leaves, blocks, oxygenation, answers)
+    return answers.swapaxes(0, 1).reshape(solve.LEAF_OUTPUTS, -1)[:, : lanes.shape[1]]
 
 
 def leaf_lanes(

@@ -1,48 +1,62 @@
 """Leaf temperature, stomata and assimilation of many leaves, solved together.
 
-A block of leaves ("lanes") is walked step by step. In each step one straight-line loop over the lanes
-evaluates the leaf at its present temperature and a second one improves that temperature, so that the compiler
-turns both into vector instructions. Every array written in a loop is made inside the function: only then
-does the compiler know that no two of them overlap.
+A block of leaves ("lanes") is walked step by step. A step is three straight-line loops over the lanes: what
+leaf temperature makes of the leaf, where supply and demand of CO2 meet, and how the energy left over improves
+the temperature. Short loops without branches become vector instructions, and the processor works on several
+lanes at once. A leaf that has settled is left as it is, so no leaf depends on its neighbours.
 
-Six secant steps inside a bracket are enough for nearly every leaf. The few that are left are gathered and
-solved again with care: a scan upwards from the coolest possible leaf finds the first temperature at which
-the leaf loses more energy than it takes up, which is the solution a leaf reaches from a cool morning.
+A few secant steps inside a bracket are enough for nearly every leaf. Those that are left are gathered and
+given more steps, and the last of them a scan upwards from the coolest possible leaf: it finds the first
+temperature at which the leaf loses more energy than it takes up, the solution a leaf reaches from a cool morning.
 """
 
 from __future__ import annotations
 
-from typing import Any
+from typing import NamedTuple
 
 import numpy as np
 
-from cropstress.compiled import exponential, inlined, kernel
+from cropstress.compiled import LANES, ROW, at, exponential, inlined, kernel, lane_loop
 from cropstress.leaf.air import (
     AIR_HEAT_CAPACITY,
     EVAPORATION_HEAT,
     VAPOUR_TO_CO2_BOUNDARY,
-    VAPOUR_TO_CO2_STOMATA,
     energy_surplus,
     heat_conductance,
     radiative_conductance,
-    stomatal_factor,
     vapour_conductance,
-    vapour_deficit,
 )
-from cropstress.leaf.pathway import carboxylation, enzyme_demand, leaf_state, light_demand, net_rate
-from cropstress.leaf.responses import deactivation_exponent
+from cropstress.leaf.pathway import (
+    carboxylation,
+    improved_rates,
+    leaf_state,
+    limiting_rates,
+    net_rate,
+    state_found,
+    state_kept,
+)
+from cropstress.leaf.responses import peak_normalisation, temperature_terms, three_inverses
+from cropstress.leaf.stomata import (
+    Stomata,
+    co2_at_rest,
+    co2_when_open,
+    conductance,
+    conductance_in_series,
+    stomatal_factor,
+    supply,
+)
 
-LANES = 256  # leaves in a block
-CAREFUL_LANES = 32  # leaves in a block of the second stage; a multiple of every vector width times unrolling
-_SECANT_STEPS = 6
+FEW_LANES = 32  # those left over are taken in multiples of this, of every vector width times unrolling
+_SECANT_STEPS = 4  # for all leaves
+_MORE_SECANT_STEPS = 12  # for the few that are left then
 _SCAN_STEPS = 40
 _REFINING_STEPS = 24
-_START = 0.35  # share of the way up the bracket, measured
-_TOLERANCE = 1e-5  # of cp (gH + gr), in K: energy left over in an accepted solution
+_START = 0.25  # share of the way from the air down to the coolest leaf: few steps, and the coolest solution (measured)
+_TOLERANCE = 3e-5  # K: the surplus left over in an accepted solution, by its slope with temperature
+_LAST_STEP = 0.05  # K: a larger last step means that the secant had not settled
 _KEPT_OPEN = 0.5  # 1; see `expected_slope`
-_LAST_STEP = 1e-3  # K: a larger last step means that the secant had not settled
-_LEAST_CO2 = 1.0  # umol mol-1: a Newton step that overshoots is caught here
-_FIRST_CO2_SHARE = 0.7  # of the air's CO2: where the search starts
+_LEAST_SLOPE = 0.05  # of cp (gH + gr): a flatter secant is not trusted
+_RATE_TOLERANCE = 1e-5  # umol m-2 s-1: between the net rate solved for and what carboxylation gives
 
 # Rows of the block that describes the leaves.
 AIR_TEMPERATURE = 0  # [degC]
@@ -56,6 +70,27 @@ PRESSURE = 7  # [kPa]
 CO2 = 8  # of the air [umol mol-1]
 GROWTH_TEMPERATURE = 9  # [degC]
 LEAF_INPUTS = 10
+# Further rows of the workspace that holds them.
+_CARBOXYLATION_25 = 10
+_ELECTRON_TRANSPORT_25 = 11
+_SENSIBLE = 12
+_VAPOUR = 13
+_RESISTANCE = 14
+_INVERSE_PRESSURE = 15
+_LOWER = 16
+_UPPER = 17
+_TEMPERATURE = 18
+_BEFORE = 19
+_SURPLUS_BEFORE = 20
+_RISE = 21
+_RUN = 22
+_SETTLED = 23
+_ENZYME = 24
+_LIGHT = 25
+_DEFICIT = 26
+_FACTOR = 27
+_STATE = 28  # and the rows after it
+_WORKSPACE = 37
 
 # Rows of the block with the answers.
 ASSIMILATION = 0  # net [umol m-2 s-1]
@@ -66,357 +101,323 @@ INTERCELLULAR_CO2 = 4  # [umol mol-1]
 STOMATAL_CONDUCTANCE = 5  # to vapour [mol m-2 s-1]
 CARBOXYLATION = 6  # [umol m-2 s-1]
 OXYGENATION = 7  # [umol m-2 s-1]
-UNSETTLED = 8  # 1 where the first stage did not settle
+UNSETTLED = 8  # 1 where the steps taken did not settle
 LEAF_OUTPUTS = 9
+
+
+class Surroundings(NamedTuple):
+    """What makes the state of one leaf at a temperature, beside the crop."""
+
+    photons: float  # absorbed [umol m-2 s-1]
+    capacity: float  # of the top leaf's [1]
+    growth: float  # temperature [degC]
+    carboxylation_25: float  # Vcmax25 with the normalisation of its peak [umol m-2 s-1]
+    electron_transport_25: float  # Jmax25 with the normalisation of its peak [umol m-2 s-1]
+    inverse_pressure: float  # [kPa-1]
+    oxygenation: float  # 1, or 0 for the leaf without it
 
 
 @inlined
 def normal_capacities(leaf, growth_temperature):  # type: ignore[no-untyped-def]
     """Return Vcmax25 and Jmax25 with the normalisations of their peaks [umol m-2 s-1]."""
-    carboxylation_exponent = deactivation_exponent(
-        leaf.carboxylation_deactivation,
-        leaf.carboxylation_entropy_intercept + leaf.carboxylation_entropy_slope * growth_temperature,
-    )
-    electron_exponent = deactivation_exponent(
-        leaf.electron_transport_deactivation,
-        leaf.electron_transport_entropy_intercept + leaf.electron_transport_entropy_slope * growth_temperature,
-    )
     ratio = leaf.electron_transport_ratio_intercept + leaf.electron_transport_ratio_slope * growth_temperature
     return (
-        leaf.carboxylation_capacity * (1.0 + exponential(carboxylation_exponent)),
-        leaf.carboxylation_capacity * ratio * (1.0 + exponential(electron_exponent)),
+        leaf.carboxylation_capacity
+        * peak_normalisation(
+            leaf.carboxylation_deactivation,
+            leaf.carboxylation_entropy_intercept + leaf.carboxylation_entropy_slope * growth_temperature,
+        ),
+        leaf.carboxylation_capacity
+        * ratio
+        * peak_normalisation(
+            leaf.electron_transport_deactivation,
+            leaf.electron_transport_entropy_intercept + leaf.electron_transport_entropy_slope * growth_temperature,
+        ),
     )
 
 
 @inlined
-def supply(
-    assimilation: float, co2: float, resistance: float, intercept: float, factor: float
-) -> tuple[float, float]:
-    """Return what the stomata allow at a net rate.
+def stomata_of(leaf, space, i):  # type: ignore[no-untyped-def]
+    """Return the way of CO2 into the leaf of one lane."""
+    return Stomata(space[at(CO2, i)], space[at(_RESISTANCE, i)], leaf.stomatal_intercept, space[at(_FACTOR, i)])
 
-    Returns
-    -------
-    tuple
-        Intercellular CO2 [umol mol-1] and its slope with the rate.
-    """
-    surface = co2 - resistance * assimilation
-    gain = max(assimilation, 0.0)
-    # Conductance x surface CO2, so that one division serves all.
-    opened = intercept * surface + factor * gain
-    inverse = 1.0 / opened
-    opening = (factor if assimilation > 0.0 else 0.0) - intercept * resistance
-    inside = surface - VAPOUR_TO_CO2_STOMATA * assimilation * surface * inverse
-    slope = -resistance - VAPOUR_TO_CO2_STOMATA * inverse * (
-        surface - assimilation * resistance - assimilation * surface * opening * inverse
-    )
-    return inside, slope
+
+@lane_loop
+def set_out(leaf, lanes, width, space):  # type: ignore[no-untyped-def]
+    """Copy a block of leaves into the workspace and work out what does not change while they are solved."""
+    for row in range(LEAF_INPUTS):
+        for i in range(width):
+            space[at(row, i)] = lanes[row, i]
+    for i in range(width):
+        wind, air, dew_point = space[at(WIND, i)], space[at(AIR_TEMPERATURE, i)], space[at(DEW_POINT, i)]
+        sensible = heat_conductance(wind, leaf.leaf_width) + radiative_conductance(air)
+        vapour = vapour_conductance(wind, leaf.leaf_width)
+        by_vapour, by_pressure, by_sensible = three_inverses(vapour, space[at(PRESSURE, i)], sensible)
+        driest = air + space[at(NET_RADIATION, i)] / AIR_HEAT_CAPACITY * by_sensible
+        carboxylation_25, electron_transport_25 = normal_capacities(leaf, space[at(GROWTH_TEMPERATURE, i)])
+        space[at(_CARBOXYLATION_25, i)] = carboxylation_25
+        space[at(_ELECTRON_TRANSPORT_25, i)] = electron_transport_25
+        space[at(_SENSIBLE, i)] = sensible
+        space[at(_VAPOUR, i)] = vapour
+        space[at(_RESISTANCE, i)] = VAPOUR_TO_CO2_BOUNDARY * by_vapour
+        space[at(_INVERSE_PRESSURE, i)] = by_pressure
+        coolest, warmest = min(dew_point, driest), max(dew_point, driest)
+        near_air = min(max(air, coolest), warmest)
+        space[at(_LOWER, i)] = coolest
+        space[at(_UPPER, i)] = warmest
+        space[at(_TEMPERATURE, i)] = near_air - _START * (near_air - coolest)
+        space[at(_SETTLED, i)] = 0.0
+
+
+@lane_loop
+def respond(leaf, width, oxygenation, space):  # type: ignore[no-untyped-def]
+    """Work out what leaf temperature makes of the leaves: their state, deficit and stomata."""
+    for i in range(width):
+        around = Surroundings(
+            space[at(PHOTONS, i)], space[at(CAPACITY, i)], space[at(GROWTH_TEMPERATURE, i)],
+            space[at(_CARBOXYLATION_25, i)], space[at(_ELECTRON_TRANSPORT_25, i)], space[at(_INVERSE_PRESSURE, i)],
+            oxygenation,
+        )  # fmt: skip
+        temperature = space[at(_TEMPERATURE, i)]
+        step, inverse = temperature_terms(temperature)
+        saturation = 0.6108 * exponential(17.27 * temperature * inverse)  # FAO-56 Eq. 11
+        deficit = saturation - space[at(VAPOUR_PRESSURE, i)]
+        space[at(_DEFICIT, i)] = deficit
+        space[at(_FACTOR, i)] = stomatal_factor(leaf.stomatal_slope, deficit)
+        state_kept(leaf, space, _STATE, i, leaf_state(leaf, around, temperature, step))
+
+
+@lane_loop
+def start_rates(leaf, width, space):  # type: ignore[no-untyped-def]
+    """Set the limiting rates to those of a leaf whose uptake alone opens its stomata."""
+    for i in range(width):
+        state = state_found(leaf, space, _STATE, i)
+        enzyme, light = limiting_rates(leaf, state, co2_when_open(stomata_of(leaf, space, i)), space[at(PRESSURE, i)])
+        space[at(_ENZYME, i)] = enzyme
+        space[at(_LIGHT, i)] = light
+
+
+@lane_loop
+def meet(leaf, width, space):  # type: ignore[no-untyped-def]
+    """Bring the limiting rates nearer to where demand meets supply, in leaves that have not settled."""
+    for i in range(width):
+        state = state_found(leaf, space, _STATE, i)
+        stomata = stomata_of(leaf, space, i)
+        enzyme_before, light_before, settled = space[at(_ENZYME, i)], space[at(_LIGHT, i)], space[at(_SETTLED, i)]
+        enzyme, light = improved_rates(leaf, state, enzyme_before, light_before, stomata, space[at(PRESSURE, i)])
+        space[at(_ENZYME, i)] = enzyme_before if settled > 0.0 else enzyme
+        space[at(_LIGHT, i)] = light_before if settled > 0.0 else light
 
 
 @inlined
-def newton_step(demand: float, demand_slope: float, assimilation: float, supply_slope: float) -> float:
-    """Return a net rate nearer to where demand and supply meet."""
-    return assimilation - (demand - assimilation) / (demand_slope * supply_slope - 1.0)
+def energy_of(leaf, space, i):  # type: ignore[no-untyped-def]
+    """Return the surplus of energy of one lane's leaf [W m-2] and its conductance to vapour [mol m-2 s-1]."""
+    state = state_found(leaf, space, _STATE, i)
+    stomata = stomata_of(leaf, space, i)
+    rate = net_rate(leaf, state, space[at(_ENZYME, i)], space[at(_LIGHT, i)], co2_at_rest(stomata, state.respiration))
+    passed = conductance_in_series(stomata, rate, space[at(_VAPOUR, i)])
+    surplus = energy_surplus(
+        space[at(_TEMPERATURE, i)], space[at(AIR_TEMPERATURE, i)], space[at(_DEFICIT, i)], space[at(NET_RADIATION, i)],
+        space[at(_SENSIBLE, i)], passed, space[at(_INVERSE_PRESSURE, i)],
+    )  # fmt: skip
+    return surplus, passed
 
 
 @inlined
-def improved_rates(leaf, state, enzyme, light, co2, resistance, factor, pressure):  # type: ignore[no-untyped-def]
-    """Return both limiting net rates after one Newton step each."""
-    inside, slope = supply(enzyme, co2, resistance, leaf.stomatal_intercept, factor)
-    demand, demand_slope = enzyme_demand(leaf, state, max(inside, _LEAST_CO2), pressure)
-    enzyme = newton_step(demand, demand_slope, enzyme, slope)
-    inside, slope = supply(light, co2, resistance, leaf.stomatal_intercept, factor)
-    demand, demand_slope = light_demand(leaf, state, max(inside, _LEAST_CO2), pressure)
-    return enzyme, newton_step(demand, demand_slope, light, slope)
-
-
-@inlined
-def expected_slope(leaf_temperature, saturation, sensible, vapour, conductance, pressure):  # type: ignore[no-untyped-def]
+def expected_slope(space, i, passed):  # type: ignore[no-untyped-def]
     """Return about how fast the surplus falls with leaf temperature [W m-2 K-1], for a first step.
 
     Stomata that close as the air gets drier give back about half of what the deficit adds (measured).
     """
-    steepness = 4098.0 * saturation / ((leaf_temperature + 237.3) * (leaf_temperature + 237.3))  # FAO-56 Eq. 13
-    passed = conductance * vapour / (conductance + vapour)
-    return -AIR_HEAT_CAPACITY * sensible - _KEPT_OPEN * EVAPORATION_HEAT * passed * steepness / pressure
+    shifted = space[at(_TEMPERATURE, i)] + 237.3
+    steepness = 4098.0 * (space[at(_DEFICIT, i)] + space[at(VAPOUR_PRESSURE, i)]) / (shifted * shifted)  # FAO-56 Eq. 13
+    evaporated = _KEPT_OPEN * EVAPORATION_HEAT * passed * steepness * space[at(_INVERSE_PRESSURE, i)]
+    return -AIR_HEAT_CAPACITY * space[at(_SENSIBLE, i)] - evaporated
 
 
-@inlined
-def combined_rate(leaf, state, enzyme, light, co2, resistance):  # type: ignore[no-untyped-def]
-    """Return the net rate, from the limits and the CO2 inside a leaf that only respires."""
-    at_rest = co2 + (resistance + VAPOUR_TO_CO2_STOMATA / leaf.stomatal_intercept) * state.respiration
-    return net_rate(leaf, state, enzyme, light, at_rest)
+@lane_loop
+def first_step(leaf, width, space):  # type: ignore[no-untyped-def]
+    """Improve the temperatures by the slope to be expected."""
+    for i in range(width):
+        here, coolest, warmest = space[at(_TEMPERATURE, i)], space[at(_LOWER, i)], space[at(_UPPER, i)]
+        surplus, passed = energy_of(leaf, space, i)
+        slope = expected_slope(space, i, passed)
+        space[at(_BEFORE, i)] = here
+        space[at(_SURPLUS_BEFORE, i)] = surplus
+        space[at(_RISE, i)] = slope
+        space[at(_RUN, i)] = 1.0
+        space[at(_TEMPERATURE, i)] = min(max(here - surplus / slope, coolest), warmest)
 
 
-@kernel
-def solve_block(leaf, lanes, width, oxygenation, careful, answers):  # type: ignore[no-untyped-def]
-    """Solve leaf temperature, stomata and assimilation of one block of leaves.
+@lane_loop
+def secant_step(leaf, width, space):  # type: ignore[no-untyped-def]
+    """Improve the temperatures by the slope from the step before; return how many leaves still move."""
+    for i in range(width):
+        here, before = space[at(_TEMPERATURE, i)], space[at(_BEFORE, i)]
+        coolest, warmest = space[at(_LOWER, i)], space[at(_UPPER, i)]
+        rise_before, run_before, settled = space[at(_RISE, i)], space[at(_RUN, i)], space[at(_SETTLED, i)]
+        conducted = AIR_HEAT_CAPACITY * space[at(_SENSIBLE, i)]
+        surplus, _ = energy_of(leaf, space, i)
+        moved = here - before
+        fell = surplus - space[at(_SURPLUS_BEFORE, i)]
+        # The slope is fell / moved. One that is too flat, or of too small a step, is not trusted.
+        steep = -fell * moved > _LEAST_SLOPE * conducted * moved * moved and abs(moved) > 1e-9
+        rise = fell if steep else rise_before
+        run = moved if steep else run_before
+        asked = surplus * run / rise
+        arrived = max(abs(asked), abs(surplus) / conducted) < _TOLERANCE and abs(moved) < _LAST_STEP
+        stays = 1.0 if arrived else settled
+        further = min(max(here - asked, coolest), warmest)
+        space[at(_BEFORE, i)] = here
+        space[at(_SURPLUS_BEFORE, i)] = surplus
+        space[at(_RISE, i)] = rise
+        space[at(_RUN, i)] = run
+        space[at(_SETTLED, i)] = stays
+        space[at(_TEMPERATURE, i)] = here if stays > 0.0 else further
+    moving = 0
+    for i in range(width):
+        moving += 0 if space[at(_SETTLED, i)] > 0.0 else 1
+    return moving
 
-    Parameters
-    ----------
-    leaf : record of `C3_LEAF` or `C4_LEAF`
-    lanes : float64 array (LEAF_INPUTS, >= width)
-        The leaves, see the row names of this module.
-    width : int
-        Leaves to solve: a multiple of CAREFUL_LANES, at most LANES.
-    oxygenation : float
-        1, or 0 for leaves whose Rubisco takes no oxygen.
-    careful : bool
-        Scan upwards for the coolest solution, then refine it.
-    answers : float64 array (LEAF_OUTPUTS, >= width)
-        Written.
+
+@lane_loop
+def written_out(leaf, width, space, results, answers):  # type: ignore[no-untyped-def]
+    """Work out the answers of leaves that have settled; return how many have not.
+
+    The state of a leaf that has settled was made at its own temperature, by the last `respond`.
     """
-    air = np.empty(LANES)
-    humidity = np.empty(LANES)
-    net_radiation = np.empty(LANES)
-    photons = np.empty(LANES)
-    capacity = np.empty(LANES)
-    pressure = np.empty(LANES)
-    co2 = np.empty(LANES)
-    growth = np.empty(LANES)
-    normal_carboxylation = np.empty(LANES)
-    normal_electron_transport = np.empty(LANES)
-    sensible = np.empty(LANES)
-    vapour = np.empty(LANES)
-    temperature = np.empty(LANES)
-    before = np.empty(LANES)
-    surplus = np.empty(LANES)
-    surplus_before = np.empty(LANES)
-    first_slope = np.empty(LANES)
-    lower = np.empty(LANES)
-    upper = np.empty(LANES)
-    stride = np.empty(LANES)
-    unsettled = np.empty(LANES)
-    enzyme = np.empty(LANES)
-    light = np.empty(LANES)
-    answer_rate = np.empty(LANES)
-    answer_respiration = np.empty(LANES)
-    answer_deficit = np.empty(LANES)
-    answer_co2 = np.empty(LANES)
-    answer_conductance = np.empty(LANES)
-    answer_carboxylation = np.empty(LANES)
-    answer_oxygenation = np.empty(LANES)
     for i in range(width):
-        air[i] = lanes[AIR_TEMPERATURE, i]
-        humidity[i] = lanes[VAPOUR_PRESSURE, i]
-        net_radiation[i] = lanes[NET_RADIATION, i]
-    for i in range(width):
-        photons[i] = lanes[PHOTONS, i]
-        capacity[i] = lanes[CAPACITY, i]
-        pressure[i] = lanes[PRESSURE, i]
-    for i in range(width):
-        co2[i] = lanes[CO2, i]
-        growth[i] = lanes[GROWTH_TEMPERATURE, i]
-        vapour[i] = lanes[WIND, i]
-        lower[i] = lanes[DEW_POINT, i]
-    for i in range(width):
-        dew_point = lower[i]
-        wind = vapour[i]
-        vapour[i] = vapour_conductance(wind, leaf.leaf_width)
-        conductance = heat_conductance(wind, leaf.leaf_width) + radiative_conductance(air[i])
-        driest = air[i] + net_radiation[i] / (AIR_HEAT_CAPACITY * conductance)
-        coolest = min(dew_point, driest)
-        warmest = max(dew_point, driest)
-        sensible[i] = conductance
-        normal_carboxylation[i], normal_electron_transport[i] = normal_capacities(leaf, growth[i])
-        lower[i] = coolest
-        upper[i] = warmest
-        stride[i] = (warmest - coolest) / _SCAN_STEPS
-        start = coolest if careful else coolest + _START * (warmest - coolest)
-        temperature[i] = start
-        before[i] = start
-        surplus_before[i] = 0.0
-        unsettled[i] = 0.0
-    for i in range(width):
-        state = leaf_state(
-            leaf, temperature[i], photons[i], capacity[i], growth[i], normal_carboxylation[i],
-            normal_electron_transport[i], pressure[i], oxygenation,
-        )
-        guess = _FIRST_CO2_SHARE * co2[i]
-        enzyme[i] = enzyme_demand(leaf, state, guess, pressure[i])[0]
-        light[i] = light_demand(leaf, state, guess, pressure[i])[0]
-
-    steps = _SCAN_STEPS + _REFINING_STEPS if careful else _SECANT_STEPS
-    for step in range(steps):
+        state = state_found(leaf, space, _STATE, i)
+        stomata = stomata_of(leaf, space, i)
+        at_rest = co2_at_rest(stomata, state.respiration)
+        solved = net_rate(leaf, state, space[at(_ENZYME, i)], space[at(_LIGHT, i)], at_rest)
+        inside, _ = supply(stomata, solved)
+        fixed, oxygenated = carboxylation(leaf, state, inside, solved, space[at(PRESSURE, i)])
+        rate = fixed - 0.5 * oxygenated - state.respiration
+        results[at(ASSIMILATION, i)] = rate
+        results[at(RESPIRATION, i)] = state.respiration
+        results[at(LEAF_TEMPERATURE, i)] = space[at(_TEMPERATURE, i)]
+        results[at(DEFICIT, i)] = space[at(_DEFICIT, i)]
+        results[at(INTERCELLULAR_CO2, i)] = inside
+        results[at(STOMATAL_CONDUCTANCE, i)] = conductance(stomata, solved)
+        results[at(CARBOXYLATION, i)] = fixed
+        results[at(OXYGENATION, i)] = oxygenated
+        agreed = abs(rate - solved) < _RATE_TOLERANCE
+        results[at(UNSETTLED, i)] = 0.0 if agreed and space[at(_SETTLED, i)] > 0.0 else 1.0
+    for row in range(LEAF_OUTPUTS):
         for i in range(width):
-            state = leaf_state(
-                leaf, temperature[i], photons[i], capacity[i], growth[i], normal_carboxylation[i],
-                normal_electron_transport[i], pressure[i], oxygenation,
-            )
-            resistance = VAPOUR_TO_CO2_BOUNDARY / vapour[i]
-            deficit = vapour_deficit(temperature[i], humidity[i])
-            factor = stomatal_factor(leaf.stomatal_slope, deficit)
-            first, second = improved_rates(
-                leaf, state, enzyme[i], light[i], co2[i], resistance, factor, pressure[i]
-            )
-            first, second = improved_rates(leaf, state, first, second, co2[i], resistance, factor, pressure[i])
-            enzyme[i] = first
-            light[i] = second
-            rate = combined_rate(leaf, state, first, second, co2[i], resistance)
-            conductance = leaf.stomatal_intercept + factor * max(rate, 0.0) / (co2[i] - resistance * rate)
-            surplus[i] = energy_surplus(
-                temperature[i], air[i], deficit, net_radiation[i], sensible[i], vapour[i], conductance, pressure[i]
-            )
-            first_slope[i] = expected_slope(
-                temperature[i], humidity[i] + deficit, sensible[i], vapour[i], conductance, pressure[i]
-            )
-        if careful and step < _SCAN_STEPS:
-            for i in range(width):
-                here, coolest, warmest, left_over, crossed = (
-                    temperature[i], lower[i], upper[i], surplus[i], unsettled[i],
-                )  # fmt: skip
-                now_crossed = 1.0 if left_over <= 0.0 else crossed
-                warmest = here if now_crossed > crossed else warmest
-                coolest = coolest if now_crossed > 0.0 else here
-                lower[i] = coolest
-                upper[i] = warmest
-                unsettled[i] = now_crossed
-                temperature[i] = 0.5 * (coolest + warmest) if now_crossed > 0.0 else here + stride[i]
-        elif careful:
-            for i in range(width):
-                here, coolest, warmest, left_over = temperature[i], lower[i], upper[i], surplus[i]
-                coolest = here if left_over > 0.0 else coolest
-                warmest = warmest if left_over > 0.0 else here
-                lower[i] = coolest
-                upper[i] = warmest
-                before[i] = here
-                temperature[i] = 0.5 * (coolest + warmest)
-        else:
-            for i in range(width):
-                here, coolest, warmest, left_over = temperature[i], lower[i], upper[i], surplus[i]
-                conducted = AIR_HEAT_CAPACITY * sensible[i]
-                moved = here - before[i]
-                small = abs(moved) < 1e-9
-                secant = (left_over - surplus_before[i]) / (1.0 if small else moved)
-                slope = first_slope[i] if small or secant > -0.05 * conducted else secant
-                before[i] = here
-                surplus_before[i] = left_over
-                temperature[i] = min(max(here - left_over / slope, coolest), warmest)
+            answers[row, i] = results[at(row, i)]
+    unsettled = 0
+    for i in range(width):
+        unsettled += 1 if results[at(UNSETTLED, i)] > 0.0 else 0
+    return unsettled
 
+
+@lane_loop
+def gather(space, answers, first, most, few, places):  # type: ignore[no-untyped-def]
+    """Copy unsettled lanes from lane `first` on, `most` at most, into another workspace.
+
+    Returns
+    -------
+    tuple of int
+        Lanes copied; that number filled up to whole vectors, with copies of the last; the lane to go on from.
+    """
+    count = 0
+    lane = first
+    while lane < LANES and count < most:
+        if answers[UNSETTLED, lane] > 0.0:
+            places[count] = lane
+            count += 1
+        lane += 1
+    width = (count + FEW_LANES - 1) // FEW_LANES * FEW_LANES
+    places[count:width] = places[count - 1]
+    for row in range(_STATE):
+        for k in range(width):
+            few[at(row, k)] = space[at(row, places[k])]
+    return count, width, lane
+
+
+@lane_loop
+def scatter(few_answers, count, places, answers):  # type: ignore[no-untyped-def]
+    """Copy answers back to the lanes they belong to."""
+    for k in range(count):
+        for row in range(LEAF_OUTPUTS):
+            answers[row, places[k]] = few_answers[row, k]
+
+
+@lane_loop
+def walk_by_secants(leaf, width, steps, oxygenation, space):  # type: ignore[no-untyped-def]
+    """Take secant steps until all leaves have settled."""
+    for _ in range(steps):
+        respond(leaf, width, oxygenation, space)
+        meet(leaf, width, space)
+        if secant_step(leaf, width, space) == 0:
+            break
+
+
+@lane_loop
+def scan_upwards(leaf, width, oxygenation, space):  # type: ignore[no-untyped-def]
+    """Find the coolest temperature at which a leaf loses more energy than it takes up, then bisect."""
     for i in range(width):
-        state = leaf_state(
-            leaf, temperature[i], photons[i], capacity[i], growth[i], normal_carboxylation[i],
-            normal_electron_transport[i], pressure[i], oxygenation,
-        )
-        resistance = VAPOUR_TO_CO2_BOUNDARY / vapour[i]
-        deficit = vapour_deficit(temperature[i], humidity[i])
-        factor = stomatal_factor(leaf.stomatal_slope, deficit)
-        first, second = improved_rates(leaf, state, enzyme[i], light[i], co2[i], resistance, factor, pressure[i])
-        first, second = improved_rates(leaf, state, first, second, co2[i], resistance, factor, pressure[i])
-        rate = combined_rate(leaf, state, first, second, co2[i], resistance)
-        inside, _ = supply(rate, co2[i], resistance, leaf.stomatal_intercept, factor)
-        conductance = leaf.stomatal_intercept + factor * max(rate, 0.0) / (co2[i] - resistance * rate)
-        surplus[i] = energy_surplus(
-            temperature[i], air[i], deficit, net_radiation[i], sensible[i], vapour[i], conductance, pressure[i]
-        )
-        fixed, oxygenated = carboxylation(leaf, state, inside, rate, pressure[i])
-        answer_carboxylation[i] = fixed
-        answer_oxygenation[i] = oxygenated
-        answer_rate[i] = fixed - 0.5 * oxygenated - state.respiration
-        answer_respiration[i] = state.respiration
-        answer_deficit[i] = deficit
-        answer_co2[i] = inside
-        answer_conductance[i] = conductance
-        # What counts is the step that the energy left over would still ask for.
-        moved = temperature[i] - before[i]
-        conducted = AIR_HEAT_CAPACITY * sensible[i]
-        unsettled[i] = 1.0 if abs(surplus[i]) > _TOLERANCE * conducted or abs(moved) > _LAST_STEP else 0.0
-    count = 0.0
-    for i in range(width):
-        answers[ASSIMILATION, i] = answer_rate[i]
-        answers[RESPIRATION, i] = answer_respiration[i]
-        answers[LEAF_TEMPERATURE, i] = temperature[i]
-        answers[DEFICIT, i] = answer_deficit[i]
-        answers[INTERCELLULAR_CO2, i] = answer_co2[i]
-        answers[STOMATAL_CONDUCTANCE, i] = answer_conductance[i]
-        answers[CARBOXYLATION, i] = answer_carboxylation[i]
-        answers[OXYGENATION, i] = answer_oxygenation[i]
-        answers[UNSETTLED, i] = unsettled[i]
-        count += unsettled[i]
-    return count
+        space[at(_TEMPERATURE, i)] = space[at(_LOWER, i)]
+        space[at(_RUN, i)] = (space[at(_UPPER, i)] - space[at(_LOWER, i)]) / _SCAN_STEPS
+        space[at(_RISE, i)] = 0.0  # 1 where it was found
+        space[at(_SETTLED, i)] = 0.0
+    respond(leaf, width, oxygenation, space)
+    start_rates(leaf, width, space)
+    for _ in range(_SCAN_STEPS + _REFINING_STEPS):
+        respond(leaf, width, oxygenation, space)
+        meet(leaf, width, space)
+        for i in range(width):
+            here, coolest, warmest = space[at(_TEMPERATURE, i)], space[at(_LOWER, i)], space[at(_UPPER, i)]
+            surplus, _ = energy_of(leaf, space, i)
+            found = 1.0 if surplus <= 0.0 else space[at(_RISE, i)]
+            coolest = here if surplus > 0.0 else coolest
+            warmest = warmest if surplus > 0.0 else here
+            space[at(_LOWER, i)] = coolest
+            space[at(_UPPER, i)] = warmest
+            space[at(_RISE, i)] = found
+            space[at(_TEMPERATURE, i)] = 0.5 * (coolest + warmest) if found > 0.0 else here + space[at(_RUN, i)]
+    respond(leaf, width, oxygenation, space)
 
 
 @kernel
 def solve_leaves(leaf, lanes, oxygenation, answers):  # type: ignore[no-untyped-def]
-    """Solve a block of LANES leaves; the few that the first stage leaves over are solved with care.
-
-    Parameters are those of `solve_block`.
-    """
-    unsettled = solve_block(leaf, lanes, LANES, oxygenation, False, answers)
-    if unsettled == 0.0:
-        return
-    few = np.empty((LEAF_INPUTS, CAREFUL_LANES))
-    few_answers = np.empty((LEAF_OUTPUTS, CAREFUL_LANES))
-    places = np.empty(CAREFUL_LANES, dtype=np.int64)
-    next_lane = 0
-    while next_lane < LANES:
-        count = 0
-        while next_lane < LANES and count < CAREFUL_LANES:
-            if answers[UNSETTLED, next_lane] > 0.0:
-                places[count] = next_lane
-                few[:, count] = lanes[:LEAF_INPUTS, next_lane]
-                count += 1
-            next_lane += 1
-        if count == 0:
-            break
-        for i in range(count, CAREFUL_LANES):
-            few[:, i] = few[:, 0]
-        solve_block(leaf, few, CAREFUL_LANES, oxygenation, True, few_answers)
-        for i in range(count):
-            answers[:LEAF_OUTPUTS, places[i]] = few_answers[:, i]
-
-
-@kernel
-def gross_without_oxygenation(leaf, lanes, temperature, deficit, start, answers):  # type: ignore[no-untyped-def]
-    """Gross assimilation without oxygenation at a given leaf temperature and deficit.
+    """Solve a block of leaves.
 
     Parameters
     ----------
     leaf : record of `C3_LEAF` or `C4_LEAF`
     lanes : float64 array (LEAF_INPUTS, LANES)
-    temperature, deficit : float64 array (LANES,)
-        Leaf temperature [degC] and leaf-to-air deficit [kPa], held.
-    start : float64 array (LANES,)
-        A net rate to start from [umol m-2 s-1].
-    answers : float64 array (LANES,)
-        Written: net rate plus respiration [umol m-2 s-1].
+        The leaves, see the row names of this module.
+    oxygenation : float
+        1, or 0 for leaves whose Rubisco takes no oxygen.
+    answers : float64 array (LEAF_OUTPUTS, LANES)
+        Written.
     """
-    leaf_temperature = np.empty(LANES)
-    leaf_deficit = np.empty(LANES)
-    photons = np.empty(LANES)
-    capacity = np.empty(LANES)
-    pressure = np.empty(LANES)
-    co2 = np.empty(LANES)
-    growth = np.empty(LANES)
-    vapour = np.empty(LANES)
-    first_guess = np.empty(LANES)
-    gross = np.empty(LANES)
-    for i in range(LANES):
-        leaf_temperature[i] = temperature[i]
-        leaf_deficit[i] = deficit[i]
-        first_guess[i] = start[i]
-    for i in range(LANES):
-        photons[i] = lanes[PHOTONS, i]
-        capacity[i] = lanes[CAPACITY, i]
-        pressure[i] = lanes[PRESSURE, i]
-    for i in range(LANES):
-        co2[i] = lanes[CO2, i]
-        growth[i] = lanes[GROWTH_TEMPERATURE, i]
-        vapour[i] = lanes[WIND, i]
-    for i in range(LANES):
-        normal_carboxylation, normal_electron_transport = normal_capacities(leaf, growth[i])
-        state = leaf_state(
-            leaf, leaf_temperature[i], photons[i], capacity[i], growth[i], normal_carboxylation,
-            normal_electron_transport, pressure[i], 0.0,
-        )  # fmt: skip
-        resistance = VAPOUR_TO_CO2_BOUNDARY / vapour_conductance(vapour[i], leaf.leaf_width)
-        factor = stomatal_factor(leaf.stomatal_slope, leaf_deficit[i])
-        enzyme = first_guess[i]
-        light = first_guess[i]
-        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
-        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
-        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
-        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
-        enzyme, light = improved_rates(leaf, state, enzyme, light, co2[i], resistance, factor, pressure[i])
-        gross[i] = combined_rate(leaf, state, enzyme, light, co2[i], resistance) + state.respiration
-    for i in range(LANES):
-        answers[i] = gross[i]
+    space = np.empty(_WORKSPACE * ROW)
+    results = np.empty(LEAF_OUTPUTS * ROW)
+    set_out(leaf, lanes, LANES, space)
+    respond(leaf, LANES, oxygenation, space)
+    start_rates(leaf, LANES, space)
+    meet(leaf, LANES, space)
+    first_step(leaf, LANES, space)
+    walk_by_secants(leaf, LANES, _SECANT_STEPS, oxygenation, space)
+    unsettled = written_out(leaf, LANES, space, results, answers)
+    if unsettled == 0:
+        return
+    few = np.empty(_WORKSPACE * ROW)
+    few_answers = np.empty((LEAF_OUTPUTS, LANES))
+    places = np.empty(LANES, dtype=np.int64)
+    count, width, _ = gather(space, answers, 0, LANES, few, places)
+    walk_by_secants(leaf, width, _MORE_SECANT_STEPS, oxygenation, few)
+    unsettled = written_out(leaf, width, few, results, few_answers)
+    scatter(few_answers, count, places, answers)
+    next_lane = 0
+    while unsettled > 0 and next_lane < LANES:
+        count, width, next_lane = gather(space, answers, next_lane, FEW_LANES, few, places)
+        if count == 0:
+            break
+        scan_upwards(leaf, width, oxygenation, few)
+        written_out(leaf, width, few, results, few_answers)
+        scatter(few_answers, count, places, answers)

@@ -9,7 +9,7 @@ import numpy as np
 import pyproj
 import xarray as xr
 
-from cropstress.errors import Fault, InputError
+from cropstress.errors import Fault, InputError, count_of
 from cropstress.places.grid_file import PlacedGrid, read_grid_file
 from cropstress.weather.grids import Grid
 from cropstress.weather.location import grid_of
@@ -59,10 +59,10 @@ def read_area(
             row, column = np.argwhere(beyond)[0]
             grid = grid_of(dataset)
             what = (
-                f"the crop area is {words} in {int(beyond.sum())} cells, for example "
-                f"{read.values[row, column]:g} "
-                f"{said.get('unit') or read.unit} ({share[row, column]:.4g} of the cell) at {grid.row} "
-                f"{grid.rows[row]:.6g}, {grid.column} {grid.columns[column]:.6g}"
+                f"the crop area is {words} in {count_of(int(beyond.sum()), 'cell')}, for example "
+                f"{read.values[row, column]:g} in the unit '{said.get('unit') or read.unit}', "
+                f"{share[row, column]:.4g} of the cell, at {grid.row} {grid.rows[row]:.6g}, "
+                f"{grid.column} {grid.columns[column]:.6g}"
             )
             remedy = 'Check the unit ("1", "%", "ha") and the fill value.'
             faults.append(Fault(what, read.where, remedy))
@@ -77,14 +77,18 @@ def _as_share(read: PlacedGrid, said: str | None, dataset: xr.Dataset) -> tuple[
     if not text:
         remedy = 'Say it: { file = "...", unit = "1" } for a share, "%" or "ha".'
         raise InputError([Fault("the crop area has no unit", read.where, remedy)])
+    remedy = 'Say it: { file = "...", unit = "1" } for a share, "%", "ha" or "km2".'
     try:
         unit = read_unit(text)
+    except UnitError as error:
+        raise InputError([Fault(str(error), read.where, remedy)]) from error
+    try:
         if unit.dimensionless:
             return read.values * linear(unit, read_unit("1"))[0], ROUNDING
         hectares = read.values * (linear(unit, read_unit("m2"))[0] / SQUARE_METRES_PER_HECTARE)
     except UnitError as error:
-        remedy = 'A crop area is a share ("1", "%") or an area ("ha", "km2").'
-        raise InputError([Fault(str(error), read.where, remedy)]) from error
+        what = f"the unit '{text}' is neither that of a share nor that of an area"
+        raise InputError([Fault(what, read.where, remedy)]) from error
     return hectares / cell_area_hectares(dataset), LARGEST_EXCESS
 
 

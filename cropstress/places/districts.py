@@ -16,7 +16,7 @@ import xarray as xr
 from cropstress.errors import Fault, InputError, nearest
 from cropstress.weather.grids import Grid
 from cropstress.weather.location import grid_of, wrapped
-from cropstress.weather.open import find_files, label_of
+from cropstress.weather.open import find_one_file, label_of
 
 _CENTRES_AT_ONCE = 500_000  # keeps the index of cell centres small
 
@@ -87,13 +87,7 @@ def read_districts(
     InputError
         Missing or unreadable file, layer or field; no CRS; not polygons; no district on the grid.
     """
-    folder = None if base is None else Path(base)
-    paths, faults = find_files(path, folder)
-    if faults:
-        raise InputError(faults)
-    label = label_of(paths[0], folder)
-    table = _read(paths[0], layer, label)
-    code_field, shown_field = _fields(table, id_field, name_field, label)
+    table, code_field, shown_field, label = _opened(path, layer, id_field, name_field, base)
     table, remarks = _sound(table, code_field, label)
     grid = grid_of(dataset)
     codes = [_as_text(code) for code in table[code_field]]
@@ -117,6 +111,31 @@ def read_districts(
     return Districts(list(number), [first[code] for code in number], index, shapes, label, remarks)
 
 
+def read_district_codes(
+    path: str, layer: str | None, id_field: str | None, name_field: str | None, base: str | Path | None = None
+) -> tuple[list[str], str]:
+    """Read the codes of districts, where there is no weather grid to lay them on, and how messages name the file.
+
+    Parameters and faults are those of `read_districts`.
+    """
+    table, code_field, _, label = _opened(path, layer, id_field, name_field, base)
+    table, _ = _sound(table, code_field, label)
+    return list(dict.fromkeys(_as_text(code) for code in table[code_field])), label
+
+
+def _opened(
+    path: str, layer: str | None, id_field: str | None, name_field: str | None, base: str | Path | None
+) -> tuple[geopandas.GeoDataFrame, str, str | None, str]:
+    """Return the features of a file, the fields of codes and names, and how messages name the file."""
+    folder = None if base is None else Path(base)
+    found, faults = find_one_file(path, folder)
+    if found is None:
+        raise InputError(faults)
+    label = label_of(found, folder)
+    table = _read(found, layer, label)
+    return table, *_fields(table, id_field, name_field, label), label
+
+
 def _read(path: Path, layer: str | None, label: str) -> geopandas.GeoDataFrame:
     try:
         layers = [str(name) for name, _ in pyogrio.list_layers(path)]
@@ -129,7 +148,8 @@ def _read(path: Path, layer: str | None, label: str) -> geopandas.GeoDataFrame:
             raise InputError([Fault(what, label, 'Say which: [places] layer = "...".')])
         table = geopandas.read_file(path, layer=layer or layers[0])
     except (pyogrio.errors.DataSourceError, pyogrio.errors.DataLayerError, OSError, IndexError) as error:
-        what = f"the districts cannot be read ({error})".replace(str(path), label)
+        reason = str(error).partition(";")[0].rstrip(".").replace(str(path), label)
+        what = f"the districts cannot be read ({reason})"
         remedy = "Give polygons as GeoPackage, GeoJSON or another format GDAL reads."
         raise InputError([Fault(what, label, remedy)]) from error
     if not isinstance(table, geopandas.GeoDataFrame) or table.empty:

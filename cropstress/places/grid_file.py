@@ -9,9 +9,10 @@ import numpy as np
 import xarray as xr
 
 from cropstress.errors import Fault, InputError, nearest
+from cropstress.weather.damage import READING, damage_faults
 from cropstress.weather.grids import compare, difference, horizontal_dimensions, read_grid
 from cropstress.weather.location import grid_of
-from cropstress.weather.open import OpenFile, find_files, open_files
+from cropstress.weather.open import OpenFile, find_one_file, open_files
 
 
 @dataclass(frozen=True)
@@ -70,17 +71,33 @@ def read_grid_file(
     InputError
         Missing file, not NetCDF, no such variable, several that fit, time steps, another grid.
     """
-    folder = None if base is None else Path(base)
-    paths, faults = find_files(path, folder)
-    opened, more = open_files(paths, folder)
-    if faults or more:
-        raise InputError([*faults, *more])
-    if len(opened) > 1:
-        labels = ", ".join(file.label for file in opened)
-        raise InputError([Fault(f"{meaning} comes from one file, and {labels} fit", path, "Name one file.")])
+    opened, faults = _opened(path, base)
+    if faults:
+        raise InputError(faults)
     (file,) = opened
     with file.dataset:
-        return _read(file, name, dataset, meaning, standard_name)
+        try:
+            return _read(file, name, dataset, meaning, standard_name)
+        except READING as error:
+            damage = damage_faults((file, str(each)) for each in file.dataset.variables)
+            if damage:
+                raise InputError(damage) from error
+            raise
+
+
+def grid_file_faults(path: str, base: str | Path | None) -> list[Fault]:
+    """Return why a file cannot be opened as NetCDF, before there is a grid to lay it on."""
+    opened, faults = _opened(path, base)
+    for file in opened:
+        file.dataset.close()
+    return faults
+
+
+def _opened(path: str, base: str | Path | None) -> tuple[list[OpenFile], list[Fault]]:
+    folder = None if base is None else Path(base)
+    found, faults = find_one_file(path, folder)
+    opened, more = open_files([found] if found else [], folder)
+    return opened, [*faults, *more]
 
 
 def _read(

@@ -13,11 +13,12 @@ import xarray as xr
 from cropstress.errors import Fault, InputError, nearest
 from cropstress.places.dates import Date, DateError, day_of_year, days_in_year, read_date
 from cropstress.places.districts import Districts
-from cropstress.places.grid_file import read_grid_file
+from cropstress.places.grid_file import grid_file_faults, read_grid_file
 from cropstress.weather.location import grid_of
-from cropstress.weather.open import find_files, label_of
+from cropstress.weather.open import find_one_file, label_of
 
 FIRST_DAY, LAST_DAY = 1.0, 366.0  # day of year
+_WORKBOOK = (b"PK\x03\x04", b"\xd0\xcf\x11\xe0")  # first bytes of .xlsx and .ods, and of .xls (common knowledge)
 
 
 @dataclass(frozen=True)
@@ -153,7 +154,8 @@ def _from_grid(
     uneven = int((there & (days != read.values)).sum())
     if uneven:
         remarks.append(f"{read.where}: {uneven} sowing days are not whole; rounded")
-    span = f"day {np.nanmin(days):.0f} to {np.nanmax(days):.0f} of the year"
+    first, last = np.nanmin(days), np.nanmax(days)
+    span = f"day {first:.0f}{'' if first == last else f' to {last:.0f}'} of the year"
     return Sowing(f"sown by the grid '{read.name}', {span}", calendar, days=days, remarks=remarks)
 
 
@@ -163,14 +165,9 @@ def _from_table(
     if districts is None:
         remedy = 'Add [places] districts = "FILE" and id_field = "FIELD".'
         raise InputError([Fault("a sowing table needs districts, and none are given", spec["table"], remedy)])
-    folder = None if base is None else Path(base)
-    paths, faults = find_files(spec["table"], folder)
-    if faults:
-        raise InputError(faults)
-    label = label_of(paths[0], folder)
-    rows = _rows(paths[0], spec.get("code", "code"), spec.get("date", "date"), label)
+    rows, label = _table(spec, base)
     dates, faults = _dates(rows, calendar, label)
-    faults += _code_faults([code for _, code, _ in rows], districts, label)
+    faults += _code_faults([code for _, code, _ in rows], districts.codes, districts.label, label)
     years = {date.year for date in dates.values()}
     if len(years) > 1:
         named = ", ".join("none" if year is None else str(year) for year in sorted(years, key=str))
@@ -181,15 +178,51 @@ def _from_table(
     return _by_district(dates, districts, calendar, label, next(iter(years), None))
 
 
+def sowing_faults(
+    spec: str | Mapping[str, str], base: str | Path | None = None, districts: tuple[list[str], str] | None = None
+) -> list[Fault]:
+    """Return what is wrong with a sowing by itself, where there is no weather to lay it on.
+
+    Parameters
+    ----------
+    spec : str or mapping
+        As in `read_sowing`.
+    base : str or Path, optional
+        The folder a relative name starts from.
+    districts : (list of str, str), optional
+        The codes of the districts and how messages name their file.
+    """
+    try:
+        if isinstance(spec, str):
+            read_date(spec)
+        elif "grid" in spec:
+            return grid_file_faults(spec["grid"], base)
+        elif "table" in spec:
+            rows, label = _table(spec, base)
+            faults = _dates(rows, "standard", label)[1]
+            return faults + (_code_faults([code for _, code, _ in rows], *districts, label) if districts else [])
+    except DateError as error:
+        return [Fault(str(error), "sowing", error.remedy)]
+    except InputError as error:
+        return error.faults
+    return []
+
+
+def _table(spec: Mapping[str, str], base: str | Path | None) -> tuple[list[tuple[int, str, str]], str]:
+    """Return the rows of a sowing table and how messages name it."""
+    folder = None if base is None else Path(base)
+    path, faults = find_one_file(spec["table"], folder)
+    if path is None:
+        raise InputError(faults)
+    label = label_of(path, folder)
+    return _rows(path, spec.get("code", "code"), spec.get("date", "date"), label), label
+
+
 def _rows(path: Path, code: str, date: str, label: str) -> list[tuple[int, str, str]]:
     """Return line number, code and date of every row of a table."""
-    try:
-        text = path.read_text(encoding="utf-8-sig")
-    except (OSError, UnicodeDecodeError) as error:
-        remedy = "Save it as CSV in UTF-8, where you may read it."
-        raise InputError(
-            [Fault(f"the table cannot be read ({error.__class__.__name__})", label, remedy)]
-        ) from error
+    text = _text(path, label)
+    if not text.strip():
+        raise InputError([Fault("the table is empty", label, "Give each district's code and date.")])
     first = text.partition("\n")[0]
     separator = max(",;\t", key=first.count)
     table = csv.DictReader(text.splitlines(), delimiter=separator, skipinitialspace=True)
@@ -204,14 +237,32 @@ def _rows(path: Path, code: str, date: str, label: str) -> list[tuple[int, str, 
             faults.append(Fault(f"the table has no column '{column}'", label, remedy))
     if faults:
         raise InputError(faults)
-    rows = [
-        (table.line_num, (row[code] or "").strip(), (row[date] or "").strip())
-        for row in table
-        if any((value or "").strip() for value in row.values() if not isinstance(value, list))
-    ]
+    try:
+        rows = [
+            (table.line_num, (row[code] or "").strip(), (row[date] or "").strip())
+            for row in table
+            if any((value or "").strip() for value in row.values() if not isinstance(value, list))
+        ]
+    except csv.Error as error:
+        what = f"the table cannot be read as CSV ({error})"
+        raise InputError([Fault(what, f"{label}: line {table.line_num}", "Check the quotes there.")]) from error
     if not rows:
         raise InputError([Fault("the table has no rows", label, "Give each district's code and date.")])
     return rows
+
+
+def _text(path: Path, label: str) -> str:
+    try:
+        content = path.read_bytes()
+        return content.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        what, remedy = "the table is not UTF-8 text", "Save it as CSV in UTF-8."
+        if content.startswith(_WORKBOOK):
+            what, remedy = "this is a workbook or another packed file, not CSV text", "Save its sheet as CSV in UTF-8."
+        raise InputError([Fault(what, label, remedy)]) from error
+    except OSError as error:
+        what = f"the table cannot be read ({error.strerror or type(error).__name__})"
+        raise InputError([Fault(what, label, "Name a file you may read.")]) from error
 
 
 def _dates(
@@ -237,16 +288,16 @@ def _dates(
     return dates, faults
 
 
-def _code_faults(codes: list[str], districts: Districts, label: str) -> list[Fault]:
+def _code_faults(codes: list[str], district_codes: list[str], districts_label: str, label: str) -> list[Fault]:
     """Return faults for codes that lost their leading zeros, or for a table of other districts altogether."""
-    known = set(districts.codes)
+    known = set(district_codes)
     unknown = [code for code in codes if code not in known]
-    by_bare = {code.lstrip("0"): code for code in districts.codes}
+    by_bare = {code.lstrip("0"): code for code in district_codes}
     pairs = [(code, by_bare[code.lstrip("0")]) for code in unknown if code.lstrip("0") in by_bare]
     faults = []
     for lost, here, there in (
-        ([(mine, full) for mine, full in pairs if len(mine) < len(full)], label, districts.label),
-        ([(theirs, full) for full, theirs in pairs if len(theirs) < len(full)], districts.label, label),
+        ([(mine, full) for mine, full in pairs if len(mine) < len(full)], label, districts_label),
+        ([(theirs, full) for full, theirs in pairs if len(theirs) < len(full)], districts_label, label),
     ):
         if lost:
             short, full = lost[0]
@@ -255,9 +306,9 @@ def _code_faults(codes: list[str], districts: Districts, label: str) -> list[Fau
             remedy = "Write codes as text: a spreadsheet turns them into numbers and drops the zeros."
             faults.append(Fault(what, here, remedy))
     if not faults and len(unknown) == len(codes):
-        mine, theirs = (", ".join(each[:3]) for each in (codes, districts.codes))
+        mine, theirs = (", ".join(each[:3]) for each in (codes, district_codes))
         what = f"no code of the table ({mine} ...) is one of the districts' ({theirs} ...)"
-        remedy = f"Check the column of codes and the id_field of {districts.label}."
+        remedy = f"Check the column of codes and the id_field of {districts_label}."
         faults.append(Fault(what, label, remedy))
     return faults
 

@@ -24,7 +24,9 @@ def make_plan(
     weather: xr.Dataset, tile: tuple[int, int] | None = None, block_days: int | None = None
 ) -> Plan:
     """Plan the blocks and tiles of a canonical weather dataset."""
-    chunks = [weather[name].chunks[0] for name in weather.data_vars if weather[name].chunks and weather[name].ndim == 3]
+    chunks = [
+        variable.chunks[0] for variable in weather.data_vars.values() if variable.chunks and variable.ndim == 3
+    ]
     rows, columns = weather["tmax"].shape[1:]
     return Plan(plan_blocks(weather.sizes["time"], chunks, block_days), plan_tiles(rows, columns, tile))
 
@@ -45,7 +47,10 @@ def compute_results(
     cells = int(np.prod(weather["tmax"].shape[1:]))
     gas = has_gas_exchange(weather)
     results = [
-        make_result(entry, gather(entry, computed.tiles[entry.name], cells), weather, axis, options, gas, attributes)
+        make_result(
+            entry, gather(entry, computed.tiles[entry.name], cells, computed.observed), weather, axis, options, gas,
+            attributes,
+        )
         for entry in entries
     ]
     return results, computed
@@ -121,17 +126,15 @@ def assess(
         return found
 
     whole = dask.delayed(run, pure=False)()
-    for name in list(outline.data_vars):
-        empty = outline[name]
-        outline[name] = empty.copy(
-            data=dask.array.from_delayed(whole[str(name)], shape=empty.shape, dtype=empty.dtype)
-        )
-    return outline
+
+    def later(name: str) -> dask.array.Array:
+        return dask.array.from_delayed(whole[name], shape=outline[name].shape, dtype=outline[name].dtype)
+
+    lazy = {str(name): outline[name].copy(data=later(str(name))) for name in outline.data_vars}
+    return outline.assign(lazy).assign_coords(season_end=("season", later("season_end")))
 
 
 def _outline(entry: Entry, weather: xr.Dataset, axis: TimeAxis, options: Options) -> xr.Dataset:
     """Return the result of a run in which no day was counted: its names, shapes and coordinates."""
     cells = int(np.prod(weather["tmax"].shape[1:]))
-    result = make_result(entry, gather(entry, [], cells), weather, axis, options, has_gas_exchange(weather), {})
-    last = np.minimum(entry.sowing.max(axis=1) + int(sum(entry.profile.days)) - 1, axis.length - 1)
-    return result.assign_coords(season_end=("season", axis.values[last]))
+    return make_result(entry, gather(entry, [], cells), weather, axis, options, has_gas_exchange(weather), {})

@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
+import threading
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, replace
+from typing import Any
 
 import dask
 import numpy as np
 import xarray as xr
 
-from cropstress.errors import Fault, InputError
+from cropstress.region.account import Account, BlockAccount
 from cropstress.region.calendar import TimeAxis
 from cropstress.region.entry import Entry
 from cropstress.region.plan import Plan
@@ -18,7 +20,6 @@ from cropstress.season.advance import advance
 from cropstress.weather import (
     cell_latitude_longitude,
     extraterrestrial_radiation,
-    judge_mends,
     mend_block,
     pressure_from_elevation,
 )
@@ -37,8 +38,7 @@ class Block:
     first: int
     weather: np.ndarray
     mended: np.ndarray
-    counts: dict[str, int]
-    faults: list[Fault] = field(default_factory=list)
+    account: BlockAccount
 
 
 @dataclass
@@ -60,6 +60,7 @@ class Ground:
     """What does not change in time, on all cells."""
 
     latitude: np.ndarray  # [rad]
+    longitude: np.ndarray  # [degrees]
     elevation: np.ndarray  # [m]
     pressure: np.ndarray  # [kPa], where the files hold none
 
@@ -71,14 +72,14 @@ class Ground:
 
 def ground_of(dataset: xr.Dataset) -> Ground:
     """Read latitude, elevation and the pressure that follows from it."""
-    latitude, _ = cell_latitude_longitude(dataset)
+    latitude, longitude = cell_latitude_longitude(dataset)
     if "elevation" in dataset:
         elevation = np.nan_to_num(np.asarray(dataset["elevation"].values, dtype=float).ravel())
         pressure = np.asarray(pressure_from_elevation(elevation), dtype=float)
     else:
         elevation = np.zeros(latitude.size)
         pressure = np.full(latitude.size, SEA_LEVEL_PRESSURE)
-    return Ground(np.radians(latitude.ravel()), elevation, pressure)
+    return Ground(np.radians(latitude.ravel()), longitude.ravel(), elevation, pressure)
 
 
 def has_gas_exchange(dataset: xr.Dataset) -> bool:
@@ -109,11 +110,19 @@ def load_block(dataset: xr.Dataset, axis: TimeAxis, ground: Ground, first: int, 
             weather[number] = ground.pressure
         else:
             weather[number] = 0.0
-    present = int(np.isfinite(raw["tmax"]).sum())
-    return Block(
-        first, weather, mended.mended.reshape(shape), mended.counts,
-        judge_mends(mended.counts, present, mended.worst),
-    )  # fmt: skip
+    present = np.isfinite(raw["tmax"]).reshape(shape)
+    worst = {
+        kind: (example.excess, f"{example.words}, {_where(axis, ground, first + example.index[0], example.index[1])}")
+        for kind, example in mended.worst.items()
+    }
+    account = BlockAccount(mended.counts, worst, int(present.sum()), present.any(axis=0))
+    return Block(first, weather, mended.mended.reshape(shape), account)
+
+
+def _where(axis: TimeAxis, ground: Ground, day: int, cell: int) -> str:
+    """Return a day and a cell in words."""
+    latitude, longitude = ground.latitude_degrees[cell], ground.longitude[cell]
+    return f"{axis.iso(day)} at latitude {latitude:.3f}, longitude {longitude:.3f}"
 
 
 def begin_tile(entry: Entry, cells: np.ndarray) -> TileState:
@@ -132,6 +141,15 @@ def begin_tile(entry: Entry, cells: np.ndarray) -> TileState:
         np.zeros((1, seasons, entry.steps, at.SERIES_COUNT, count)),
         [],
     )
+
+
+def without_data_last(state: TileState, block: Block) -> TileState:
+    """Return the state of a tile that has not begun, its cells without data in the first block put last.
+
+    The sea then fills blocks of lanes of its own, in which nothing is solved.
+    """
+    order = np.argsort(~block.account.observed[state.cells], kind="stable")
+    return replace(state, cells=state.cells[order])
 
 
 def advance_tile(
@@ -160,11 +178,11 @@ def _done(*states: object) -> None:
 
 @dataclass
 class Computed:
-    """What the tasks leave: the states of every entry's tiles, counts of mended values and faults."""
+    """What the tasks leave: the states of every entry's tiles, counts of mended values, cells with data."""
 
     tiles: dict[str, list[TileState]]
     counts: dict[str, int]
-    days_read: int
+    observed: np.ndarray
 
 
 def compute(
@@ -209,23 +227,24 @@ def compute(
     columns = dataset.sizes[list(dataset["tmax"].dims)[2]]
     total = len(plan.blocks) * len(plan.tiles) * len(entries)
     finished = 0
-    counts: dict[str, int] = {}
+    counting = threading.Lock()
+    account = Account(ground.latitude.size, axis.length)
     graph: dict[tuple[object, ...], tuple[object, ...]] = {}
 
     def load(first: int, after: int, _waits: object) -> Block:
         block = load_block(dataset, axis, ground, first, after)
-        if block.faults:
-            raise InputError(block.faults)
-        for kind, number in block.counts.items():
-            counts[kind] = counts.get(kind, 0) + number
+        account.add(block.account)
         return block
 
     def step(entry: Entry, state: TileState, block: Block) -> TileState:
         nonlocal finished
+        if block.first == plan.blocks[0][0]:
+            state = without_data_last(state, block)
         state = advance_tile(entry, state, block, axis, ground, gas, keep_daily)
-        finished += 1
-        if progress:
-            progress(finished / total)
+        with counting:
+            finished += 1
+            if progress:
+                progress(finished / total)
         return state
 
     needed = [
@@ -245,11 +264,11 @@ def compute(
                 users.append(key)
         graph["done", k] = (_done, *users)
     last = len(plan.blocks) - 1
-    wanted = [[("tile", e, t, last) for t in range(len(plan.tiles))] for e in range(len(entries))]
+    wanted: list[Any] = [[("tile", e, t, last) for t in range(len(plan.tiles))] for e in range(len(entries))]
     states = dask.threaded.get(graph, wanted, num_workers=threads)
-    return Computed(
-        {entry.name: list(states[e]) for e, entry in enumerate(entries)}, counts, axis.length
-    )
+    account.close()
+    tiles = {entry.name: list(states[e]) for e, entry in enumerate(entries)}
+    return Computed(tiles, account.counts, account.observed)
 
 
 def _cells_of(tile: tuple[int, int, int, int], columns: int, needed: np.ndarray) -> np.ndarray:

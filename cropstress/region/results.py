@@ -46,8 +46,13 @@ _DATE_ROWS = {
 _SCALARS = ("heat_onset", "hot_day_limit", "hot_leaf_limit", "warm_night_limit", "dry_air_limit")
 
 
-def gather(entry: Entry, tiles: Sequence[TileState], cells: int) -> dict[str, np.ndarray]:
-    """Put the tiles of an entry together: totals, by_stage and by_ten_days on all cells, seasons first."""
+def gather(
+    entry: Entry, tiles: Sequence[TileState], cells: int, observed: np.ndarray | None = None
+) -> dict[str, np.ndarray]:
+    """Put the tiles of an entry together: totals, by_stage and by_ten_days on all cells, seasons first.
+
+    `observed` tells which cells have weather data on any day; all, where it is not known.
+    """
     seasons = len(entry.years)
     whole = {
         "totals": np.full((seasons, at.TOTALS, cells), np.nan),
@@ -57,7 +62,7 @@ def gather(entry: Entry, tiles: Sequence[TileState], cells: int) -> dict[str, np
     for tile in tiles:
         for name, array in whole.items():
             array[..., tile.cells] = getattr(tile, name)[0]
-    return whole
+    return whole | {"observed": np.ones(cells, dtype=bool) if observed is None else observed}
 
 
 def make_result(
@@ -79,7 +84,7 @@ def make_result(
     totals = whole["totals"]
     row_name, column_name = (str(name) for name in weather["tmax"].dims[1:])
     shape = (weather.sizes[row_name], weather.sizes[column_name])
-    status = _status(entry, totals, options)
+    status = _status(entry, totals, options, whole["observed"])
     fields = _measures(entry, totals, axis, options, gas)
     blank = status > 0
     variables: dict[str, Any] = {}
@@ -113,11 +118,7 @@ def make_result(
         "co2": float(entry.co2[-1]) if np.unique(entry.co2).size == 1 else ", ".join(
             f"{year}: {value:g}" for year, value in zip(entry.years, entry.co2, strict=True)
         ),
-        "acclimation": (
-            "none" if growth is None
-            else "leaves used to the last 30 days" if options.acclimation
-            else f"leaves used to {growth:g} degC"
-        ),
+        "acclimation": "to the last 30 days" if options.acclimation and growth is not None else "none",
         "water": "assumes enough soil water",
         "last_day_of_data": axis.iso(axis.length - 1),
     } | dict(attributes)  # fmt: skip
@@ -126,8 +127,8 @@ def make_result(
     return result
 
 
-def _status(entry: Entry, totals: np.ndarray, options: Options) -> np.ndarray:
-    """Return why cells are blank, (seasons, cells)."""
+def _status(entry: Entry, totals: np.ndarray, options: Options, observed: np.ndarray) -> np.ndarray:
+    """Return why cells are blank, (seasons, cells); the sea is sea, whatever a map of crops says there."""
     season_days = totals[:, at.SEASON_DAYS]
     missing = totals[:, at.MISSING]
     status = np.zeros(season_days.shape, dtype=np.int64)
@@ -136,6 +137,7 @@ def _status(entry: Entry, totals: np.ndarray, options: Options) -> np.ndarray:
         status[missing >= season_days] = CELL_STATUS["no_weather_data"]
     status[np.isnan(season_days)] = CELL_STATUS["no_sowing_date"]
     status[:, ~entry.grown] = CELL_STATUS["no_crop"]
+    status[:, ~observed] = CELL_STATUS["no_weather_data"]
     return status
 
 
@@ -185,8 +187,9 @@ def _share(lost: np.ndarray, assimilation: np.ndarray, least: float) -> np.ndarr
 def _coordinates(entry: Entry, totals: np.ndarray, axis: TimeAxis, weather: xr.Dataset) -> dict[str, Any]:
     starts, ends = [], []
     for season in range(len(entry.years)):
-        sown = entry.sowing[season][(entry.sowing[season] >= 0)]
-        start = int(sown.min())
+        sown = entry.sowing[season] >= 0
+        counted = sown & entry.grown if (sown & entry.grown).any() else sown
+        start = int(entry.sowing[season][counted].min())
         last = totals[season, at.SOWING] + totals[season, at.SEASON_DAYS] - 1
         known = last[np.isfinite(last)]
         starts.append(axis.values[start])
@@ -206,7 +209,7 @@ def _coordinates(entry: Entry, totals: np.ndarray, axis: TimeAxis, weather: xr.D
         coords[name] = float(entry.season[name][0])
     if entry.season["flowers"][0]:
         coords["flowering_limit"] = float(entry.season["flowering_limit"][0])
-    for name, coordinate in weather.coords.items():
-        if "time" not in coordinate.dims and name not in coords:
-            coords[str(name)] = coordinate.variable
+    for key, coordinate in weather.coords.items():
+        if "time" not in coordinate.dims and key not in coords:
+            coords[str(key)] = coordinate.variable
     return coords

@@ -77,6 +77,7 @@ def label_of(measure: Measure) -> str | None:
 
 
 def thresholds(result: xr.Dataset) -> dict[str, tuple[float, dict[str, Any]]]:
+    """Return the limits of a result as scalar coordinates: name, value and attributes."""
     found: dict[str, tuple[float, dict[str, Any]]] = {}
     for name, (standard_name, unit, words) in _LIMITS.items():
         value = travelling.limit(result, name)
@@ -99,6 +100,7 @@ def _limit_attributes(standard_name: str | None, unit: str, words: str) -> dict[
 
 
 def measures_in(result: xr.Dataset) -> Iterator[tuple[str, Measure, str]]:
+    """Yield each variable that holds a measure, with the measure and the variable's long name."""
     for name, measure in MEASURES.items():
         if name in result:
             yield name, measure, measure.long_name
@@ -120,6 +122,7 @@ def _comment(measure: Measure) -> str | None:
 
 
 def axis_attributes(grid: MapGrid, letter: str) -> dict[str, Any]:
+    """Return the CF attributes of the axis Y or X of a grid."""
     if grid.in_degrees and not grid.geographic:
         name = "grid_latitude" if letter == "Y" else "grid_longitude"
         return {"standard_name": name, "units": "degrees"}
@@ -133,6 +136,7 @@ def axis_attributes(grid: MapGrid, letter: str) -> dict[str, Any]:
 
 
 def place_attributes(name: str) -> dict[str, Any]:
+    """Return the CF attributes of a coordinate of places by its name; none where it is neither."""
     if name.lower().startswith("lat"):
         return {"standard_name": "latitude", "units": "degrees_north"}
     if name.lower().startswith("lon"):
@@ -141,6 +145,7 @@ def place_attributes(name: str) -> dict[str, Any]:
 
 
 def global_attributes(result: xr.Dataset, history: str) -> dict[str, Any]:
+    """Return the CF attributes of the whole file."""
     version = package_version()
     found: dict[str, Any] = {
         "Conventions": CONVENTIONS,

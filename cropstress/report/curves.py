@@ -60,7 +60,7 @@ def trace_figure(
     title = phrase("trace.title", label=label, place=place) if label else phrase("trace.title_plain")
     with_uptake = "assimilation" in table and bool(table["assimilation"].notna().any())
     heights = [2.2, 1.5, 1.5] if with_uptake else [2.6]
-    page, panels = _page(title, heights, notes)
+    page, panels = _page(title, heights, notes, axis_words=True)
     days = np.arange(len(table))
     for axes, _ in panels:
         axes.set_xlim(-0.5, len(table) - 0.5)
@@ -113,6 +113,7 @@ def leaf_figure(
     (uptake, top), (share, _) = panels
     rows: list[tuple[Any, str]] = []
     groups = list(table.groupby("co2"))
+    least = 0.0
     for (co2, curve), colour in zip(groups, colours.LINES, strict=False):
         curve = curve.sort_values(over)
         temperature = curve[over].to_numpy()
@@ -123,6 +124,7 @@ def leaf_figure(
         possible = np.where(without > 0.0, without, np.nan)
         lost = np.where(actual > 0.0, 100.0 * (without - actual) / possible, np.nan)
         share.plot(temperature, lost, color=colour, linewidth=1.8)
+        least = min(least, float(np.nanmin(lost, initial=0.0)))
         rows.append(
             (Line2D([], [], color=colour, linewidth=1.8), phrase("leaf.co2", value=number(float(co2))))
         )
@@ -140,7 +142,8 @@ def leaf_figure(
     for axes in (uptake, share):
         axes.set_xlim(float(table[over].min()), float(table[over].max()))
         axes.axhline(0.0, color=colours.INK, linewidth=0.5)
-    share.set_ylim(bottom=0.0)
+    # A leaf that cannot use more sugar gains a little from photorespiration in the cold: shown, never cut off
+    share.set_ylim(bottom=1.05 * least)
     uptake.tick_params(labelbottom=False)
     share.set_xlabel(phrase(f"leaf.{over}"), fontsize=SMALL, color=colours.INK)
     page.save(path, {"Title": title, "Description": " ".join((*notes, phrase("caution.line")))})
@@ -276,13 +279,17 @@ def _legend(page: Page, top: float, rows: list[tuple[Any, str]]) -> None:
 
 
 def _month_ticks(panels: list[Axes], dates: list[str]) -> None:
-    firsts = [(day, int(date[5:7])) for day, date in enumerate(dates) if date[8:10] == "01" or day == 0]
+    firsts = [(day, date) for day, date in enumerate(dates) if date[8:10] == "01" or day == 0]
     if len(firsts) > 1 and firsts[1][0] - firsts[0][0] < 15:
         firsts = firsts[1:]
-    names = [months()[month - 1] for _, month in firsts]
+    names = [months()[int(date[5:7]) - 1] for _, date in firsts]
     room = _PANEL_WIDTH / max(len(dates), 1) * 28.0
     if max(text_width(name) for name in names) * 1.2 > room:
         names = [name[:3] for name in names]
     every = 1 + int(max(text_width(name) for name in names) * 1.2 // room)
+    days, names, years = [day for day, _ in firsts][::every], names[::every], [date[:4] for _, date in firsts][::every]
+    # The year under the first month of each
+    new = [number == 0 or year != years[number - 1] for number, year in enumerate(years)]
+    words = [f"{name}\n{year}" if first else name for name, year, first in zip(names, years, new, strict=True)]
     for axes in panels:
-        axes.set_xticks([day for day, _ in firsts][::every], names[::every])
+        axes.set_xticks(days, words)

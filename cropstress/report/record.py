@@ -24,7 +24,6 @@ FILE_NAME = "run.json"
 PACKAGES = (
     "numpy",
     "numba",
-    "scipy",
     "xarray",
     "dask",
     "netCDF4",

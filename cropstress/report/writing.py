@@ -50,22 +50,26 @@ def written_aside(path: Path | str) -> Iterator[Path]:
 def _rename(aside: Path, path: Path) -> None:
     if path.is_dir():
         raise fail(f"a folder has the name of the file {path.name}", str(path), "Move that folder away.")
+    beside = path.with_name(f"{path.stem}.new{path.suffix}")
     try:
         os.replace(aside, path)
     except PermissionError as error:
         if not path.exists():
             raise
-        raise fail(
-            f"{path.name} cannot be replaced; it is open in another program or protected",
-            str(path),
-            "Close it there (a map viewer, a spreadsheet) and run the same command again.",
-        ) from error
+        what = f"{path.name} cannot be replaced; it is open in another program or protected"
+        with suppress(OSError):
+            os.replace(aside, beside)
+            what += f"; the new one is whole beside it, as {beside.name}"
+        remedy = "Close it there (a map viewer, a spreadsheet) and run the same command again."
+        raise fail(what, str(path), remedy) from error
+    with suppress(OSError):
+        beside.unlink(missing_ok=True)  # of an earlier run that met the file open
 
 
 def _explained(error: OSError | RuntimeError, path: Path) -> InputError:
     where, number = str(path), getattr(error, "errno", None)
     folder = path.parent
-    if number in (errno.ENOSPC, errno.EDQUOT) or _little_room(folder):
+    if number in (errno.ENOSPC, errno.EDQUOT) or little_room(folder):
         return fail(
             f"no room left on the disk for {path.name}",
             where,
@@ -88,7 +92,8 @@ def _explained(error: OSError | RuntimeError, path: Path) -> InputError:
     )
 
 
-def _little_room(folder: Path) -> bool:
+def little_room(folder: Path) -> bool:
+    """Tell whether the disk of a folder is as good as full."""
     try:
         return shutil.disk_usage(folder).free < LITTLE_ROOM
     except OSError:

@@ -91,14 +91,14 @@ def changed_paths(raw: Raw, change: PathChange) -> Raw:
     return raw
 
 
-def path_faults(raw: Raw, place: Callable[[Location], str]) -> list[Fault]:
-    """Return a fault for each path that a backslash in double quotes has spoilt."""
-    faults: list[Fault] = []
+def path_faults(raw: Raw, place: Callable[[Location], str]) -> dict[Location, Fault]:
+    """Return a fault for each path that a backslash in double quotes has spoilt, by its location."""
+    faults: dict[Location, Fault] = {}
 
     def note(text: str, location: Location) -> str:
         fault = control_character_fault(text, place(location))
         if fault is not None:
-            faults.append(fault)
+            faults[location] = fault
         return text
 
     changed_paths(raw, note)

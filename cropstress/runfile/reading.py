@@ -137,6 +137,33 @@ def load_runfile(path: str | Path) -> RunFile:
         Missing file, not TOML, unknown key, wrong type, two crop entries of one name: all of them, and then
         also what is wrong with the crop profiles.
     """
+    run, faults = read_runfile(path)
+    if faults or run is None:
+        raise InputError(faults)
+    return run
+
+
+def read_runfile(path: str | Path) -> tuple[RunFile | None, list[Fault]]:
+    """Read a run file as far as it is right, so that what it names can be looked at in the same go.
+
+    Parameters
+    ----------
+    path : str or Path
+        A TOML file.
+
+    Returns
+    -------
+    RunFile or None
+        Without the tables and crop entries that are at fault, which have their defaults (`seasons.years`: none);
+        None where the weather is, without which nothing else can be looked at.
+    list of Fault
+        What is wrong with it and with the crop profiles.
+
+    Raises
+    ------
+    InputError
+        Missing file or not TOML.
+    """
     path = Path(path)
     layers = read_layers(path)
     raw = {"title": path.stem.replace("_", " ").replace("-", " ")} | merged(layers)
@@ -144,17 +171,48 @@ def load_runfile(path: str | Path) -> RunFile:
     def place(location: Location) -> str:
         return _place(location, raw, layers)
 
-    faults = [*path_faults(raw, place), *_doubled_names(raw, layers)]
+    spoilt = path_faults(raw, place)
+    faults = [*spoilt.values(), *_doubled_names(raw, layers)]
+    run: RunFile | None
     try:
         run = RunFile.model_validate(raw)
     except ValidationError as error:
         faults = [*faults_of(error, place, _keys_at, _TABLE_OF.get), *faults]
-        raise InputError([*faults, *_profile_faults(raw, path)]) from None
-    run._path = path
-    faults += _cross_faults(run)
-    if faults:
-        raise InputError([*faults, *_profile_faults(raw, path)])
-    return run
+        run = _what_is_right(raw, list(spoilt))
+    else:
+        faults += _cross_faults(run, path.name)
+        run = _what_is_right(raw, list(spoilt)) if spoilt else run
+    if run is not None:
+        run._path = path
+    return run, [*faults, *_profile_faults(raw, path)] if faults else []
+
+
+def _what_is_right(raw: Raw, spoilt: list[Location]) -> RunFile | None:
+    """Return the tables and crop entries that have no fault, table by table; None without the weather."""
+    found: dict[str, Any] = {}
+    for name, table in _TABLES.items():
+        try:
+            found[name] = table.model_validate(raw.get(name, {}))
+        except ValidationError:
+            continue
+        if any(location[0] == name for location in spoilt):
+            del found[name]
+    if "weather" not in found:
+        return None
+    no_seasons = Seasons.model_construct(years=[], through=None, allowed_missing=0.0)
+    entries = raw.get("crops")
+    crops = []
+    for number, written in enumerate(entries if isinstance(entries, list) else []):
+        try:
+            entry = CropEntry.model_validate(written)
+        except ValidationError:
+            continue
+        without_districts = isinstance(entry.sowing, SowingTable) and "places" not in found
+        if not without_districts and ("crops", number) not in [location[:2] for location in spoilt]:
+            crops.append(entry)
+    title = raw["title"] if isinstance(raw["title"], str) else ""
+    defaults = {name: table() for name, table in _TABLES.items() if name not in ("weather", "seasons")}
+    return RunFile.model_construct(title=title, crops=crops, **({"seasons": no_seasons} | defaults | found))
 
 
 _TABLES: dict[str, type[Table]] = {
@@ -167,9 +225,9 @@ _TABLES: dict[str, type[Table]] = {
     "output": Output,
     "compute": Compute,
 }
-_TABLE_OF = {key: f"[{name}]" for name, table in _TABLES.items() for key in table.model_fields} | {
-    key: "[[crops]]" for key in ("profile", "sowing", "area", "stages", "changes", "label")
-}
+_TABLE_OF = {key: f"[{name}]" for name, table in _TABLES.items() for key in table.model_fields} | dict.fromkeys(
+    ("profile", "sowing", "area", "stages", "changes", "label"), "[[crops]]"
+)
 
 
 def _keys_at(location: Location) -> list[str]:
@@ -247,9 +305,8 @@ def _doubled_names(raw: Raw, layers: list[Layer]) -> list[Fault]:
     return list(faults.values())
 
 
-def _cross_faults(run: RunFile) -> list[Fault]:
+def _cross_faults(run: RunFile, shown: str) -> list[Fault]:
     """Return what does not fit between tables that are each right by themselves."""
-    shown = run.path.name
     faults = []
     if isinstance(run.air.co2, dict):
         missing = [f"{year:04}" for year in run.seasons.years if f"{year:04}" not in run.air.co2]

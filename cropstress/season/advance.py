@@ -106,7 +106,8 @@ def advance(
                     if active[i]:
                         season = int(walk[row, at.SEASON, cell])
                         mean = 0.5 * (cells[block.HIGHEST, i] + cells[block.LOWEST, i])
-                        crop_cells[block.LEAF_AREA, i] = leaf_area_at(crop, progress_at_noon(crop, row, cell, mean, walk))
+                        progress = progress_at_noon(crop, row, cell, mean, walk)
+                        crop_cells[block.LEAF_AREA, i] = leaf_area_at(crop, progress)
                         crop_cells[block.CO2, i] = co2[row, season]
                         growing = growing or (present[i] and i < width)
                 if growing and with_gas_exchange:
@@ -229,7 +230,10 @@ def count_day(
         by_ten_days[row, season, step, at.MISSING, cell] += 1.0
         sums[at.SPELL] = 0.0
     else:
-        hours = count_heat(crop, row, cell, i, today, stage, step, season, cells, crop_cells, daylight, bits, sums, by_stage, by_ten_days)
+        hours = count_heat(
+            crop, row, cell, i, today, stage, step, season, cells, crop_cells, daylight, bits, sums, by_stage,
+            by_ten_days,
+        )  # fmt: skip
         if mended > 0:
             sums[at.MENDED] += 1.0
         sums[at.COUNTED_DAYS] += 1.0
@@ -262,7 +266,9 @@ def count_day(
 
 
 @exact_inlined
-def count_heat(crop, row, cell, i, today, stage, step, season, cells, crop_cells, daylight, bits, sums, by_stage, by_ten_days):  # type: ignore[no-untyped-def]
+def count_heat(
+    crop, row, cell, i, today, stage, step, season, cells, crop_cells, daylight, bits, sums, by_stage, by_ten_days,
+):  # fmt: skip
     """Count what needs only tmax and tmin; return the hours above the limit."""
     highest = cells[block.HIGHEST, i]
     lowest = cells[block.LOWEST, i]

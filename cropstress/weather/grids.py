@@ -135,18 +135,25 @@ def read_grid(
     list of Fault
         No coordinates, coordinates out of order, no CRS, or one that cannot be read.
     """
-    where = f"{label}: {name}"
+    empty = [each for each in (row, column) if dataset.sizes[each] == 0]
+    if empty:
+        what = f"the grid has no cell along '{empty[0]}'"
+        return None, [Fault(what, f"{label}: {empty[0]}", "Write the file anew: it holds nothing.")]
+    words = [each for each in (row, column) if dataset.variables[each].dtype.kind not in "fiu"]
+    if words:
+        what = f"the coordinate '{words[0]}' holds no numbers"
+        return None, [Fault(what, f"{label}: {words[0]}", "Write the coordinates of the grid as numbers.")]
     rows, columns = (dataset.variables[each].values.astype(np.float64) for each in (row, column))
     faults = [
         Fault(
             f"the coordinate '{each}' neither rises nor falls all the way",
-            where,
+            f"{label}: {each}",
             "Put the rows and columns of the grid in order, without repeats or missing values.",
         )
         for each, values in ((row, rows), (column, columns))
         if not _in_order(values)
     ]
-    crs, remarks, crs_faults = _read_crs(dataset, name, row, column, where)
+    crs, remarks, crs_faults = _read_crs(dataset, name, row, column, label)
     faults += crs_faults
     if faults or crs is None:
         return None, faults
@@ -160,10 +167,10 @@ def _in_order(values: np.ndarray) -> bool:
 
 
 def _read_crs(
-    dataset: xr.Dataset, name: str, row: str, column: str, where: str
+    dataset: xr.Dataset, name: str, row: str, column: str, label: str
 ) -> tuple[pyproj.CRS | None, tuple[str, ...], list[Fault]]:
     """Return the CRS of a variable, what was assumed about it, and what is wrong with it."""
-    variable = dataset[name]
+    variable, where = dataset[name], f"{label}: {row}, {column}"
     mapping = variable.encoding.get("grid_mapping", variable.attrs.get("grid_mapping"))
     if mapping is None and "spatial_ref" in dataset.variables:
         mapping = "spatial_ref"
@@ -172,14 +179,13 @@ def _read_crs(
         mapping = str(mapping).split(":")[0].split()[0]
         if mapping not in dataset.variables:
             remedy = f"Write the grid mapping variable '{mapping}' into the file, or take the attribute off."
-            return None, (), [Fault(f"the grid mapping '{mapping}' is not in the file", where, remedy)]
+            return None, (), [Fault(f"the grid mapping '{mapping}' is not in the file", f"{label}: {name}", remedy)]
         try:
             crs = pyproj.CRS.from_cf(dataset.variables[mapping].attrs)
         except (pyproj.exceptions.CRSError, KeyError, ValueError) as error:
             remedy = "Write a CF grid mapping or a crs_wkt that PROJ can read."
-            return None, (), [Fault(f"the grid mapping '{mapping}' cannot be read ({error})", where, remedy)]
-        return crs, (), _scale_faults(crs, units, where)
-    label = where.partition(": ")[0]
+            return None, (), [Fault(f"the grid mapping cannot be read ({error})", f"{label}: {mapping}", remedy)]
+        return crs, (), _scale_faults(crs, units, label)
     if is_north(units[row]) and is_east(units[column]):
         return pyproj.CRS(WGS84), (f"{label}: no CRS is given; degrees are taken as WGS 84 (EPSG:4326)",), []
     values = {each: dataset.variables[each].values for each in (row, column)}
@@ -200,23 +206,24 @@ def _are_degrees(latitude: np.ndarray, longitude: np.ndarray) -> bool:
     return bool(np.abs(latitude).max() <= 90.0 and longitude.min() >= -180.0 and longitude.max() <= 360.0)
 
 
-def _scale_faults(crs: pyproj.CRS, units: dict[str, Any], where: str) -> list[Fault]:
-    """Return a fault where a projected CRS counts metres and the coordinates something else."""
-    if not crs.is_projected:
+def _scale_faults(crs: pyproj.CRS, units: dict[str, Any], label: str) -> list[Fault]:
+    """Return a fault where the CRS counts metres or degrees and the coordinates something else."""
+    if not crs.axis_info:
         return []
+    axis = crs.axis_info[0]
+    base, wanted = ("degree", 1.0) if crs.is_geographic else ("m", axis.unit_conversion_factor)
+    faults = []
     for name, unit in units.items():
-        if unit is None:
+        if unit is None or (crs.is_geographic and (is_north(unit) or is_east(unit))):
             continue
         try:
-            factor = to_unit(str(unit), "m").factor
+            factor = to_unit(str(unit), base).factor
         except UnitError:
             factor = float("nan")
-        if factor != crs.axis_info[0].unit_conversion_factor:
-            what = (
-                f"the coordinate '{name}' is in '{unit}', but its CRS counts in {crs.axis_info[0].unit_name}s"
-            )
-            return [Fault(what, where, "Write the coordinates in the unit of the CRS.")]
-    return []
+        if factor != wanted:
+            what = f"the coordinate '{name}' is in '{unit}', but its CRS counts in {axis.unit_name}s"
+            faults.append(Fault(what, f"{label}: {name}", "Write the coordinates in the unit of the CRS."))
+    return faults
 
 
 def _carried(dataset: xr.Dataset, row: str, column: str, crs: pyproj.CRS) -> dict[str, xr.Variable]:
@@ -274,7 +281,7 @@ def compare(one: Grid, other: Grid) -> tuple[slice, slice] | None:
 def difference(one: Grid, other: Grid, where: str) -> Fault:
     """Return the fault that two grids differ, showing both."""
     what = f"the grids differ: {one.label} has {one.words()}; {other.label} has {other.words()}"
-    remedy = f"Bring both to one grid (same cells to {TOLERANCE:.0%} of a cell) before."
+    remedy = f"Bring both to one grid first: the same cell centres to {100.0 * TOLERANCE:g} % of a cell."
     if one.shape == other.shape and np.allclose(np.abs(one.columns - other.columns), 360.0):
         remedy = "Longitudes differ by 360 degrees: write both as -180 to 180, or both as 0 to 360."
     return Fault(what, where, remedy)

@@ -13,11 +13,12 @@ from dataclasses import dataclass, field
 import dask
 import numpy as np
 
-from cropstress.errors import Fault
+from cropstress.errors import Fault, count_of
 from cropstress.weather.extraterrestrial import extraterrestrial_radiation
 from cropstress.weather.humidity import mean_saturation_vapour_pressure
 from cropstress.weather.layers import Layer
 from cropstress.weather.mend import LARGEST_CROSSING, LARGEST_EXCESS, NEAR_ZERO, SYSTEMATIC_SHARE
+from cropstress.weather.quantities import QUANTITIES
 
 SAMPLED_DAYS = 4
 MORE_DAYS = 12  # looked at where the first ones hold nothing at all
@@ -25,6 +26,7 @@ FEW = 2  # values; so many are never called systematic, however small the sample
 
 # Signs of a wrong unit; chosen here, far from any weather.
 WARMEST_MEDIAN, COLDEST_MEDIAN = 100.0, -100.0  # degC: kelvin called Celsius, Celsius called kelvin
+FARTHEST_MEDIAN = 400.0  # degC: beyond it, neither explains the values
 HIGHEST_FRACTION = 1.5  # %: relative humidity that never exceeds it is a fraction
 HIGHEST_PERCENT = 1000.0  # %: relative humidity above it is percent called a fraction
 LEAST_CLEARNESS = 0.01  # 1; share of the radiation at the top of the air that even overcast days exceed
@@ -197,7 +199,7 @@ class _Look:
         )
 
         def describe(at: tuple[int, int]) -> str:
-            values = ", ".join(f"{each} {array[at]:.5g}" for each, array in shown.items())
+            values = ", ".join(f"{each} {array[at]:.5g} {_unit_of(each, layer)}" for each, array in shown.items())
             grid = layer.grid
             return (
                 f"{values}{day} at {grid.row} {grid.rows[at[0]]:.6g}, {grid.column} {grid.columns[at[1]]:.6g}"
@@ -252,7 +254,7 @@ class _Look:
         for name, layer in self.layers.items():
             values = self.values[name]
             if not values:
-                days = "" if layer.days is None else f" on any of {len(self.seen)} days looked at"
+                days = "" if layer.days is None else f" on the {count_of(len(self.seen), 'day')} looked at"
                 what = f"all values are missing{days}"
                 remedy = "Check the file and its fill value: the variable holds nothing."
                 inspection.faults.append(Fault(what, layer.where, remedy))
@@ -281,9 +283,9 @@ class _Look:
         """Return the fault that values are those of another unit than is said."""
         name, unit = layer.quantity.name, layer.quantity.forms[0].unit
         found = ""
-        if unit == "degC" and median > WARMEST_MEDIAN:
+        if unit == "degC" and WARMEST_MEDIAN < median < FARTHEST_MEDIAN:
             found = "K"
-        elif unit == "degC" and median < COLDEST_MEDIAN:
+        elif unit == "degC" and -FARTHEST_MEDIAN < median < COLDEST_MEDIAN:
             found = "degC"
         elif unit == "percent" and 0.0 < span[1] <= HIGHEST_FRACTION:
             found = "1"
@@ -306,33 +308,41 @@ _HUMIDITY_NAMES = (
 )  # fmt: skip
 
 
+def _unit_of(name: str, layer: Layer) -> str:
+    return QUANTITIES[name].unit if name in QUANTITIES else layer.quantity.unit
+
+
 def _fault(check: str, layer: Layer, tally: Tally) -> Fault:
     """Return the fault of a check that failed too often."""
     quantity = layer.quantity
-    name, unit = quantity.name, f"(unit '{layer.unit}', {layer.conversion})"
+    name, unit = quantity.name, f"(unit {layer.conversion})"
     say_unit = f'[weather.variables.{name}] unit = "..."'
     example = f"for example {tally.words}"
     if check == "swapped":
         low = "tmin" if name == "tmax" else "relative_humidity_minimum"
         what = f"{name} is below {low} in {tally.share}, {example}"
-        names = f"[weather.variables.{name}] name = ... and [weather.variables.{low}] name = ..."
-        remedy = f"If they are swapped, name each: {names}; else mend the files."
+        remedy = (
+            f"If they are swapped, name each and its cell method: [weather.variables.{name}] name = ..., "
+            f'cell_method = "maximum" and [weather.variables.{low}] name = ..., cell_method = "minimum"; '
+            "else mend the files."
+        )
     elif check == "negative":
         what = f"radiation is negative in {tally.share}, {example}"
         remedy = "Name the downward radiation, not a net or an upward one, or mend the files."
     elif check == "above the top of the air":
         what = f"more radiation than reaches the top of the air in {tally.share} {unit}, {example}"
         remedy = (
-            f"The unit or the cell method is wrong, or the days are shifted: check them, or say {say_unit}."
+            f"The unit or the cell method is wrong, or the days are shifted: check them; the run file may say "
+            f"{say_unit}."
         )
     elif check == "above saturation":
         what = f"humidity is above saturation by more than 5 % in {tally.share} {unit}, {example}"
-        remedy = f"The unit or the variable is wrong: check it, or say {say_unit}."
+        remedy = f"The unit or the variable is wrong: check them; the run file may say {say_unit}."
     elif check == "too small":
         what = f"{quantity.meaning} is too small to be true in {tally.share} {unit}, {example}"
-        remedy = f"The unit or the variable is wrong: check it, or say {say_unit}."
+        remedy = f"The unit or the variable is wrong: check them; the run file may say {say_unit}."
     else:
         limits = f"{quantity.low:g} to {quantity.high:g} {quantity.unit}"
         what = f"values outside the possible {limits} in {tally.share} {unit}, {example}"
-        remedy = f"The unit or the fill value is wrong: check them, or say {say_unit}."
+        remedy = f"The unit or the fill value is wrong: check them; the run file may say {say_unit}."
     return Fault(what, layer.where, remedy)

@@ -10,7 +10,7 @@ import dask.array
 import numpy as np
 import xarray as xr
 
-from cropstress.errors import Fault
+from cropstress.errors import Fault, count_of
 from cropstress.weather.grids import Grid, compare, difference, horizontal_dimensions, read_grid
 from cropstress.weather.humidity import HEIGHT_OF_WIND, wind_factor
 from cropstress.weather.open import OpenFile
@@ -68,9 +68,12 @@ class Layer:
     @property
     def where(self) -> str:
         """How messages name it."""
-        labels = [file.label for file in self.match.files]
-        more = f" and {len(labels) - 1} more files" if len(labels) > 1 else ""
-        return f"{labels[0]}{more}: {self.match.name}"
+        return f"{labels_words([file.label for file in self.match.files])}: {self.match.name}"
+
+
+def labels_words(labels: list[str]) -> str:
+    """Return the first label and how many more there are."""
+    return labels[0] + (f" and {count_of(len(labels) - 1, 'more file')}" if len(labels) > 1 else "")
 
 
 def make_layer(match: Match) -> tuple[Layer | None, list[Fault]]:
@@ -176,17 +179,17 @@ def _conversion(match: Match, dataset: xr.Dataset, where: str) -> tuple[str, Con
     quantity = match.quantity
     key = f"[weather.variables.{quantity.name}]"
     unit = match.override.unit or str(dataset[match.name].attrs.get("units", "")).strip()
-    example = quantity.forms[0].unit
+    example = " or ".join(f'"{each}"' for each in quantity.usual_units)
     if not unit:
         return (
             "",
             None,
-            [Fault("it has no unit", where, f'Say it in the run file: {key} unit = "{example}".')],
+            [Fault("it has no unit", where, f"Say it in the run file: {key} unit = {example}.")],
         )
     try:
         found = conversion(unit, quantity)
     except UnitError as error:
-        remedy = f'If the file is wrong, say the right unit in the run file: {key} unit = "{example}".'
+        remedy = f"If the file is wrong, say the right unit in the run file: {key} unit = {example}."
         return unit, None, [Fault(str(error), where, remedy)]
     method = match.override.cell_method or cell_method(dataset, match.name)
     if (method == "sum" and not found.is_sum) or (method in ("mean", "point") and found.is_sum):
@@ -240,8 +243,9 @@ def _height(dataset: xr.Dataset, name: str) -> float | None:
 def _single(match: Match, pieces: list[Layer]) -> tuple[Layer | None, list[Fault]]:
     if len(pieces) > 1:
         labels = " and ".join(file.label for file in match.files)
-        remedy = "Take one of the files out of `files`."
-        return None, [Fault(f"'{match.name}' is in {labels}", match.quantity.name, remedy)]
+        remedy = "Take one of the files out of [weather] files."
+        what = f"'{match.name}', {match.quantity.meaning}, is in {labels}"
+        return None, [Fault(what, f"weather.files: {match.quantity.name}", remedy)]
     return pieces[0], []
 
 
@@ -261,8 +265,8 @@ def _joined(match: Match, pieces: list[Layer]) -> tuple[Layer | None, list[Fault
     axes = list(_axes(pieces))
     days = Days(np.concatenate([axis.numbers for axis in axes]), axes[0].calendar)
     labels = [piece.match.files[0].label for piece in pieces]
-    name = f"{labels[0]}{f' and {len(labels) - 1} more files' if len(labels) > 1 else ''}: {match.name}"
-    faults = joined_faults(days, labels, [len(axis.numbers) for axis in axes], name)
+    # the variables of the same files share their times: one fault, not one for each
+    faults = joined_faults(days, labels, [len(axis.numbers) for axis in axes], f"{labels_words(labels)}: time")
     if faults:
         return None, faults
     if len(laid) == 1:

@@ -9,7 +9,7 @@ import xarray as xr
 from cropstress.weather.grids import WGS84, Grid, horizontal_dimensions, is_east, is_north
 
 
-def grid_of(dataset: xr.Dataset, label: str = "the weather grids") -> Grid:
+def grid_of(dataset: xr.Dataset, label: str = "the weather grid") -> Grid:
     """Return the horizontal grid of a canonical dataset.
 
     Parameters

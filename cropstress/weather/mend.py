@@ -27,13 +27,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from cropstress.errors import Fault
+from cropstress.errors import Fault, count_of
 from cropstress.weather.humidity import mean_saturation_vapour_pressure
 from cropstress.weather.quantities import (
     HIGHEST_PRESSURE,
     HIGHEST_TEMPERATURE,
     LOWEST_PRESSURE,
     LOWEST_TEMPERATURE,
+    QUANTITIES,
 )
 
 LARGEST_CROSSING = 0.5  # K; tmin above tmax by more is no rounding
@@ -56,6 +57,21 @@ _WORDS = {
     "wind_below_zero": "wind speed below zero",
     "pressure_impossible": f"air pressure outside {LOWEST_PRESSURE:g} to {HIGHEST_PRESSURE:g} kPa",
     "rain_below_zero": "rain below zero",
+}
+
+
+#: The variables each kind is about.
+VARIABLES_OF = {
+    "temperature_impossible": "tmax, tmin",
+    "tmin_above_tmax": "tmax, tmin",
+    "radiation_below_zero": "radiation",
+    "radiation_just_above_top_of_air": "radiation",
+    "radiation_above_top_of_air": "radiation",
+    "vapour_pressure_below_zero": "vapour_pressure",
+    "vapour_pressure_above_saturation": "vapour_pressure",
+    "wind_below_zero": "wind",
+    "pressure_impossible": "pressure",
+    "rain_below_zero": "rain",
 }
 
 
@@ -130,7 +146,7 @@ class _Mending:
             self.counts[kind] = count
             flat = int(np.argmax(np.where(where, excess, -np.inf)))
             index = tuple(int(each) for each in np.unravel_index(flat, where.shape))
-            words = f"{name} {self.arrays[name][index]:.6g}, beyond by {excess[index]:.3g}"
+            words = f"{name} {self.arrays[name][index]:.6g} {QUANTITIES[name].unit}, too far by {excess[index]:.3g}"
             self.worst[kind] = Worst(float(excess[index]), (index[0], index[1], index[2]), words)
 
     def judge(
@@ -252,12 +268,12 @@ def judge_mends(
         stem, _, done = kind.rpartition("_")
         example = (worst or {}).get(kind)
         shown = example.words if isinstance(example, Worst) else example
-        share = f"{count} of {cell_days} cell-days ({count / cell_days:.1%})"
+        share = f"{count} of {cell_days} cell-days ({100.0 * count / cell_days:.1f} %)"
         what = f"{_WORDS[stem]} in {share}, too many to be {done}"
         if shown:
             what += f"; the worst: {shown}"
-        remedy = "So many are no slips: check the variable, its unit and its cell method, or mend the files."
-        faults.append(Fault(what, "weather", remedy))
+        remedy = "Check the variable, its unit and its cell method, or mend the files."
+        faults.append(Fault(what, f"weather: {VARIABLES_OF[stem]}", remedy))
     return faults
 
 
@@ -265,6 +281,6 @@ def mend_words(counts: Mapping[str, int]) -> list[str]:
     """Return what was mended or masked, in words for people, most first."""
     ordered = sorted(counts.items(), key=lambda item: -item[1])
     return [
-        f"{_WORDS[kind.rpartition('_')[0]]}: {count} cell-days {kind.rpartition('_')[2]}"
+        f"{_WORDS[kind.rpartition('_')[0]]}: {count_of(count, 'cell-day')} {kind.rpartition('_')[2]}"
         for kind, count in ordered
     ]

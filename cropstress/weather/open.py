@@ -9,9 +9,10 @@ from collections.abc import Hashable, Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
+import numpy as np
 import xarray as xr
 
-from cropstress.errors import Fault, nearest
+from cropstress.errors import Fault, count_of, nearest
 
 Names = str | os.PathLike[str] | Iterable[str | os.PathLike[str]]
 
@@ -22,9 +23,12 @@ _OTHER_FORMATS = {
     b"\x1f\x8b": ("compressed with gzip", "Unpack it first."),
     b"GRIB": ("a GRIB file", "Convert it to NetCDF."),
     b"II*\x00": ("a TIFF image", "Convert it to NetCDF."),
+    b"II+\x00": ("a TIFF image", "Convert it to NetCDF."),
     b"MM\x00*": ("a TIFF image", "Convert it to NetCDF."),
+    b"MM\x00+": ("a TIFF image", "Convert it to NetCDF."),
     b"<": ("a web page or XML text, perhaps the error page of a download", "Download it again."),
 }
+_ZARR = (".zgroup", ".zarray", "zarr.json")  # one of them marks a Zarr store; the format's own specification
 #: Files without chunks (NetCDF-3, contiguous NetCDF-4) are read in pieces of at most this size [byte], since
 #: a piece is always read whole; chosen here, some days of a large grid.
 UNCHUNKED_BYTES = 32 * 2**20
@@ -77,23 +81,59 @@ def find_files(names: Names, base: Path | None = None) -> tuple[list[Path], list
             Fault("no files are given", "weather.files", "Name at least one NetCDF file or a pattern.")
         )
     for name in given:
-        path = base / name
-        if path.is_dir():
-            remedy = f'Name the files in it, for example "{Path(name).as_posix()}/*.nc".'
-            faults.append(Fault("this is a folder, not a file", str(name), remedy))
-        elif path.exists():
-            found[path] = None
-        elif glob.has_magic(str(name)):
-            # Only what is a pattern in the name: the folder before it may hold brackets of its own.
-            fitting = sorted(glob.glob(os.fspath(name), root_dir=base, recursive=True))
-            files = [base / each for each in fitting if (base / each).is_file()]
-            found |= dict.fromkeys(files)
-            if not files:
-                remedy = f"Check the pattern; {_inside(path.parent)}."
-                faults.append(Fault("no file fits this pattern", str(name), remedy))
-        else:
-            faults.append(_missing(path, str(name)))
+        try:
+            fitting, fault = _fitting(name, base)
+        except OSError as error:
+            remedy = "Check the name and the permissions of the folders in it."
+            faults.append(Fault(f"this file cannot be looked for ({error.strerror})", str(name), remedy))
+            continue
+        found |= dict.fromkeys(fitting)
+        faults += [fault] if fault else []
     return list(found), faults
+
+
+def find_one_file(name: str | os.PathLike[str], base: Path | None = None) -> tuple[Path | None, list[Fault]]:
+    """Find the one file that a name stands for.
+
+    Parameters
+    ----------
+    name : str or path
+        A file name, or a pattern that one file fits.
+    base : Path, optional
+        The folder a relative name starts from; the current one by default.
+
+    Returns
+    -------
+    Path or None
+    list of Fault
+        Missing, a folder, or several that fit.
+    """
+    paths, faults = find_files(name, base)
+    if len(paths) > 1:
+        labels = ", ".join(label_of(path, base) for path in paths)
+        faults.append(Fault(f"one file is needed here, and {len(paths)} fit: {labels}", str(name), "Name one of them."))
+    return (None if faults else paths[0]), faults
+
+
+def _fitting(name: str | os.PathLike[str], base: Path) -> tuple[list[Path], Fault | None]:
+    """Return the files that a name or a pattern stands for, or why there are none."""
+    path = base / name
+    if path.is_dir():
+        if any((path / sign).exists() for sign in _ZARR):
+            return [], Fault("this is a Zarr store, not a NetCDF file", str(name), "Convert it to NetCDF.")
+        remedy = f'Name the files in it, for example "{Path(name).as_posix()}/*.nc".'
+        return [], Fault("this is a folder, not a file", str(name), remedy)
+    if path.exists():
+        return [path], None
+    if not glob.has_magic(str(name)):
+        return [], _missing(path, str(name), base)
+    # Only what is a pattern in the name: the folder before it may hold brackets of its own.
+    fitting = sorted(glob.glob(os.fspath(name), root_dir=base, recursive=True))
+    files = [base / each for each in fitting if (base / each).is_file()]
+    if files:
+        return files, None
+    remedy = _slashes(str(name), base) or f"Check the pattern; {_inside(path.parent)}."
+    return [], Fault("no file fits this pattern", str(name), remedy)
 
 
 def open_files(paths: Iterable[Path], base: Path | None = None) -> tuple[list[OpenFile], list[Fault]]:
@@ -121,12 +161,33 @@ def open_files(paths: Iterable[Path], base: Path | None = None) -> tuple[list[Op
             faults.append(fault)
             continue
         try:
-            opened.append(OpenFile(path, label, _open(path)))
-        except (OSError, RuntimeError, ValueError, KeyError) as error:
-            reason = str(error).replace(str(path), label)
+            dataset = _open(path)
+        except Exception as error:  # whatever the libraries raise at other people's files
+            reason = str(getattr(error, "strerror", None) or error).replace(str(path), label)
             remedy = "It is damaged or was cut short: copy or download it again."
+            if not isinstance(error, OSError | RuntimeError):
+                remedy = "An attribute in it is not as CF wants it: look at its header and write the file anew."
             faults.append(Fault(f"the file cannot be opened as NetCDF ({reason})", label, remedy))
+            continue
+        odd = _odd_packing(dataset, label)
+        faults += odd
+        opened += [] if odd else [OpenFile(path, label, dataset)]
     return opened, faults
+
+
+def _odd_packing(dataset: xr.Dataset, label: str) -> list[Fault]:
+    """Return a fault for each variable that is packed by something else than numbers."""
+    return [
+        Fault(f"its {key} is no number: {value!r}", f"{label}: {name}", f"Write {key} as a number.")
+        for name, variable in dataset.variables.items()
+        for key, value in variable.encoding.items()
+        if key in ("scale_factor", "add_offset") and not _is_number(value)
+    ]
+
+
+def _is_number(value: object) -> bool:
+    array = np.asarray(value)
+    return array.size == 1 and array.dtype.kind in "fiu"
 
 
 def label_of(path: Path, base: Path | None) -> str:
@@ -164,8 +225,8 @@ def _lazy(path: Path, chunks: dict[Hashable, int]) -> xr.Dataset:
         )
 
 
-def _missing(path: Path, name: str) -> Fault:
-    remedy = f"Check the name; {_inside(path.parent)}."
+def _missing(path: Path, name: str, base: Path) -> Fault:
+    remedy = _slashes(name, base) or f"Check the name; {_inside(path.parent)}."
     if path.parent.is_dir():
         alike = nearest(path.name, (each.name for each in path.parent.iterdir()))
         if alike:
@@ -173,11 +234,19 @@ def _missing(path: Path, name: str) -> Fault:
     return Fault("there is no such file", name, remedy)
 
 
+def _slashes(name: str, base: Path) -> str:
+    """Return what to do where backslashes, which separate folders on Windows only, keep a file from being found."""
+    turned = name.replace("\\", "/")
+    if turned == name or not (glob.glob(turned, root_dir=base, recursive=True) or (base / turned).exists()):
+        return ""
+    return f'Write it with forward slashes: "{turned}".'
+
+
 def _inside(folder: Path) -> str:
     if not folder.is_dir():
         return f"there is no folder '{folder.name}' either"
     count = sum(1 for each in folder.iterdir() if each.suffix.lower() in (".nc", ".nc4"))
-    return f"the folder '{folder.name}' holds {count} files that end in .nc"
+    return f"the folder '{folder.name}' holds {count_of(count, 'file that ends', 'files that end')} in .nc"
 
 
 def _unreadable(path: Path, label: str) -> Fault | None:

@@ -48,6 +48,8 @@ class Quantity:
     other_names : tuple of str
         Long names, in lower case, clear enough to find it by where no standard name is there; the unit must
         fit.
+    units : tuple of str
+        Units it is usually given in, to name in messages; its own unit where there are none.
     low, high : float
         Values outside are impossible [unit].
     is_timed : bool
@@ -66,11 +68,17 @@ class Quantity:
     cell_methods: tuple[str, ...] = ("mean",)
     method_needed: bool = False
     other_names: tuple[str, ...] = ()
+    units: tuple[str, ...] = ()
     low: float = float("-inf")
     high: float = float("inf")
     is_timed: bool = True
     is_needed: bool = False
     is_spare: bool = False
+
+    @property
+    def usual_units(self) -> tuple[str, ...]:
+        """Units to name in messages."""
+        return self.units or (self.unit,)
 
 
 # Impossible values. Temperature: the records of the World Meteorological Organization are -89.2 and 56.7 degC
@@ -92,6 +100,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="daily highest air temperature",
             unit="degC",
             forms=_CELSIUS,
+            units=("degC", "K"),
             standard_names=("air_temperature",),
             cell_methods=("maximum",),
             method_needed=True,
@@ -111,6 +120,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="daily lowest air temperature",
             unit="degC",
             forms=_CELSIUS,
+            units=("degC", "K"),
             standard_names=("air_temperature",),
             cell_methods=("minimum",),
             method_needed=True,
@@ -130,6 +140,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="vapour pressure",
             unit="kPa",
             forms=_PRESSURE,
+            units=("kPa", "hPa", "Pa"),
             standard_names=("water_vapor_partial_pressure_in_air",),
             other_names=(
                 "vapor pressure",
@@ -145,6 +156,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="dew point",
             unit="degC",
             forms=_CELSIUS,
+            units=("degC", "K"),
             standard_names=("dew_point_temperature",),
             other_names=("dew point temperature", "dewpoint temperature", "dew point"),
             low=LOWEST_TEMPERATURE,
@@ -155,6 +167,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="specific humidity",
             unit="kg kg-1",
             forms=(Form("kg kg-1"),),
+            units=("kg kg-1", "g kg-1"),
             standard_names=("specific_humidity",),
             other_names=("specific humidity", "near-surface specific humidity"),
             low=0.0,
@@ -165,6 +178,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="daily highest relative humidity",
             unit="%",
             forms=_PERCENT,
+            units=("%", "1"),
             standard_names=("relative_humidity",),
             cell_methods=("maximum",),
             method_needed=True,
@@ -181,6 +195,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="daily lowest relative humidity",
             unit="%",
             forms=_PERCENT,
+            units=("%", "1"),
             standard_names=("relative_humidity",),
             cell_methods=("minimum",),
             method_needed=True,
@@ -197,6 +212,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="daily mean relative humidity",
             unit="%",
             forms=_PERCENT,
+            units=("%", "1"),
             standard_names=("relative_humidity",),
             other_names=("daily mean relative humidity", *_RELATIVE),
             low=0.0,
@@ -207,6 +223,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="vapour pressure deficit",
             unit="kPa",
             forms=_PRESSURE,
+            units=("kPa", "hPa", "Pa"),
             standard_names=("water_vapor_saturation_deficit_in_air",),
             other_names=("vapor pressure deficit", "vapour pressure deficit"),
             low=0.0,
@@ -217,6 +234,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="shortwave radiation reaching the ground",
             unit="MJ m-2 d-1",
             forms=(Form("MJ m-2 day-1"), Form("MJ m-2", is_sum=True)),
+            units=("W m-2", "MJ m-2 d-1", "J m-2"),
             standard_names=(
                 "surface_downwelling_shortwave_flux_in_air",
                 "integral_wrt_time_of_surface_downwelling_shortwave_flux_in_air",
@@ -243,6 +261,7 @@ QUANTITIES: dict[str, Quantity] = {
             meaning="air pressure at the ground",
             unit="kPa",
             forms=_PRESSURE,
+            units=("kPa", "hPa", "Pa"),
             standard_names=("surface_air_pressure", "air_pressure"),
             other_names=("surface pressure", "surface air pressure"),
             low=LOWEST_PRESSURE,

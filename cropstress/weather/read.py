@@ -12,13 +12,21 @@ import xarray as xr
 
 from cropstress.errors import Fault, InputError
 from cropstress.weather.canonical import ORDER, credit, empty_dataset, variable
+from cropstress.weather.damage import READING, damage_faults
 from cropstress.weather.humidity import WORDS, pressure_from_elevation, vapour_pressure
 from cropstress.weather.inspect import inspect
 from cropstress.weather.layers import Layer, calendar_faults, make_layer, on_days, on_grid
 from cropstress.weather.location import cell_latitude_longitude
-from cropstress.weather.open import Names, OpenFile, find_files, open_files
+from cropstress.weather.open import Names, OpenFile, find_files, find_one_file, open_files
 from cropstress.weather.quantities import HUMIDITY, HUMIDITY_WAYS, QUANTITIES
-from cropstress.weather.recognise import Override, Recognised, looked_for, read_overrides, recognise
+from cropstress.weather.recognise import (
+    Override,
+    Recognised,
+    looked_for,
+    no_elevation,
+    read_overrides,
+    recognise,
+)
 from cropstress.weather.times import gap_words
 
 #: What cannot be computed without each; with tmax and tmin alone the counts of hot days and nights still can.
@@ -164,11 +172,12 @@ def read_weather(
     paths, faults = find_files(files, folder)
     work.faults += faults
     files_missing = bool(faults)
+    elevation_path = None
     if elevation is not None:
         said = {"file": elevation} if isinstance(elevation, str) else dict(elevation)
-        more, faults = find_files(said["file"], folder)
+        elevation_path, faults = find_one_file(said["file"], folder)
         work.faults += faults
-        paths += [path for path in more if path not in paths]
+        paths += [elevation_path] if elevation_path is not None and elevation_path not in paths else []
         if "name" in said:
             overrides["elevation"] = replace(overrides.get("elevation", Override()), name=said["name"])
     opened, faults = open_files(paths, folder)
@@ -179,6 +188,7 @@ def read_weather(
     # what may be in a file that could not be found or opened is not called missing
     work.faults += recognised.faults + ([] if files_missing or faults else recognised.missing)
     work.remarks += recognised.remarks
+    work.faults += no_elevation(recognised, [file for file in opened if file.path == elevation_path])
     _make_layers(recognised, overrides, work)
     _lay_together(work)
     dataset, found = _build(work, recognised)
@@ -266,7 +276,7 @@ def _lay_on_days(timed: list[Layer], work: _Work) -> None:
     if first > last:
         periods = "; ".join(f"{work.layers[name].where} {days.period()}" for name, days in axes.items())
         remedy = "Name files of the same period."
-        work.faults.append(Fault(f"the variables have no day in common: {periods}", "weather", remedy))
+        work.faults.append(Fault(f"the variables have no day in common: {periods}", "weather.files", remedy))
         for name in axes:
             del work.layers[name]
         return
@@ -295,7 +305,15 @@ def _build(work: _Work, recognised: Recognised) -> tuple[xr.Dataset | None, list
     way = _usable_way(work)
     constant = _constant_pressure(way, work.layers)
     humidity = None if way is None else lambda sample: vapour_pressure(way, {**constant, **sample})
-    inspection = inspect(work.layers, latitude, humidity, frame["time"].dt.dayofyear.values)
+    try:
+        inspection = inspect(work.layers, latitude, humidity, frame["time"].dt.dayofyear.values)
+    except READING:
+        layers = work.layers.values()
+        damage = damage_faults((file, layer.match.name) for layer in layers for file in layer.match.files)
+        if not damage:
+            raise
+        work.faults += damage
+        return None, []
     work.faults += inspection.faults
     if work.faults:
         return None, []

@@ -137,9 +137,8 @@ def _override_faults(quantity: Quantity, override: Override, where: str) -> list
         try:
             conversion(override.unit, quantity)
         except UnitError as error:
-            faults.append(
-                Fault(str(error), f"{where}.unit", f'For example unit = "{quantity.forms[0].unit}".')
-            )
+            usual = " or ".join(f'"{each}"' for each in quantity.usual_units)
+            faults.append(Fault(str(error), f"{where}.unit", f"For example unit = {usual}."))
     if override.height is not None and quantity.name != "wind":
         faults.append(Fault("a height is only used for wind", f"{where}.height", "Take the key out."))
     if override.name == LEFT_OUT and quantity.is_needed:
@@ -191,6 +190,12 @@ def _find_named(files: list[OpenFile], quantity: Quantity, override: Override, f
         found.faults.append(Fault(f"no file holds a variable '{name}'", where, remedy))
         return
     for file in holding:
+        variable = file.dataset.variables[name]
+        if variable.dtype.kind not in "fiu" or variable.ndim < 2:
+            dimensions = ", ".join(map(str, variable.dims)) or "none"
+            what = f"it is no grid of numbers; its dimensions: {dimensions}"
+            found.faults.append(Fault(what, f"{file.label}: {name}", "Name another variable."))
+            return
         method = override.cell_method or cell_method(file.dataset, name)
         if method is not None and method not in quantity.cell_methods:
             what = f"its cell method over time is '{method}', which does not fit {quantity.meaning}"
@@ -276,7 +281,7 @@ def _two_candidates(chosen: dict[str, list[tuple[OpenFile, str]]], quantity: Qua
     names = " or ".join(f'"{name}"' for name in chosen)
     return Fault(
         f"{len(chosen)} variables fit {quantity.meaning} equally well: {listed}",
-        quantity.name,
+        f"weather.files: {quantity.name}",
         f"Say which: [weather.variables.{quantity.name}] name = {names}.",
     )
 
@@ -288,7 +293,19 @@ def not_found(files: list[OpenFile], quantity: Quantity, near: list[str]) -> Fau
         what += f"; not taken: {', '.join(near)}"
     what += f"; the files hold: {contents(files)}"
     remedy = f'If one of these is it, say so: [weather.variables.{quantity.name}] name = "...".'
-    return Fault(what, quantity.name, remedy)
+    return Fault(what, f"weather.files: {quantity.name}", remedy)
+
+
+def no_elevation(recognised: Recognised, files: list[OpenFile]) -> list[Fault]:
+    """Return the fault that the file named for elevation holds none: it is not silently left out."""
+    match = recognised.matches.get("elevation")
+    told = any(fault.where.endswith(("elevation", "elevation.name")) for fault in recognised.faults)
+    if not files or told or (match is not None and files[0] in match.files):
+        return []
+    quantity = QUANTITIES["elevation"]
+    what = f"this file has no {quantity.meaning}: looked for {looked_for(quantity)}; found {contents(files)}"
+    remedy = 'If one of these is it, say so: [places] elevation = { file = "...", name = "..." }.'
+    return [Fault(what, files[0].label, remedy)]
 
 
 def looked_for(quantity: Quantity) -> str:
@@ -299,18 +316,23 @@ def looked_for(quantity: Quantity) -> str:
 
 
 def contents(files: list[OpenFile], most: int = 20) -> str:
-    """Return which variables the files hold, in words."""
+    """Return which variables the files hold, in words; each once, with the first file that holds it."""
     held: dict[str, str] = {}
+    first: dict[str, str] = {}
     for file in files:
         for name, variable in file.dataset.data_vars.items():
             known = (
                 variable.attrs.get("standard_name") or variable.attrs.get("long_name") or "no standard name"
             )
             held.setdefault(str(name), f"{name} ({known})")
-    shown = list(held.values())
-    if not shown:
+            first.setdefault(str(name), file.label)
+    if not held:
         return "nothing"
-    return ", ".join(shown[:most]) + (f" and {len(shown) - most} more" if len(shown) > most else "")
+    by_file: dict[str, list[str]] = {}
+    for name in list(held)[:most]:
+        by_file.setdefault(first[name], []).append(held[name])
+    words = "; ".join(f"{label}: {', '.join(names)}" for label, names in by_file.items())
+    return words + (f" and {len(held) - most} more" if len(held) > most else "")
 
 
 def cell_method(dataset: xr.Dataset, name: str) -> str | None:

@@ -8,7 +8,7 @@ import cftime
 import numpy as np
 import xarray as xr
 
-from cropstress.errors import Fault
+from cropstress.errors import Fault, count_of
 from cropstress.weather.grids import bounds_name
 
 EPOCH = "days since 1970-01-01"
@@ -124,7 +124,7 @@ def read_days(dataset: xr.Dataset, name: str, where: str) -> tuple[Days | None, 
             Fault(f"times in '{units}', calendar '{calendar}', cannot be read ({error})", where, remedy)
         ]
     if not len(stamps):
-        return None, [Fault("there is not a single time step", where, "Take the file out of `files`.")]
+        return None, [Fault("there is not a single time step", where, "Take the file out of [weather] files.")]
     if not np.isfinite(stamps).all():
         step = int(np.flatnonzero(~np.isfinite(stamps))[0])
         return None, [Fault(f"time step {step + 1} has no time", where, "Every time step needs its date.")]
@@ -165,14 +165,16 @@ def _order_faults(stamps: np.ndarray, axis: Days, where: str) -> list[Fault]:
     if len(backward):
         at = int(backward[0])
         what = (
-            f"times are out of order at {len(backward)} places: {axis.words(axis.numbers[at + 1])} comes "
-            f"after {axis.words(axis.numbers[at])}"
+            f"times are out of order at {count_of(len(backward), 'place')}: {axis.words(axis.numbers[at + 1])} "
+            f"comes after {axis.words(axis.numbers[at])}"
         )
         return [Fault(what, where, "Sort the file by time.")]
     doubled = np.flatnonzero(np.abs(steps) <= _MINUTE)
     if len(doubled):
         day = axis.words(axis.numbers[int(doubled[0])])
-        what = f"{len(doubled)} time steps are doubled, the first {day}"
+        what = f"the time step at {day} is there twice"
+        if len(doubled) > 1:
+            what = f"{len(doubled)} time steps are there twice, the first at {day}"
         return [Fault(what, where, "Keep one of each.")]
     if np.median(steps) < 1.0 - _MINUTE:
         return [
@@ -205,7 +207,7 @@ def joined_faults(days: Days, files: list[str], sizes: list[int], where: str) ->
     sizes : list of int
         Time steps in each.
     where : str
-        How messages name the variable.
+        How messages name the time of these files.
 
     Returns
     -------
@@ -220,9 +222,9 @@ def joined_faults(days: Days, files: list[str], sizes: list[int], where: str) ->
     if len(doubled):
         pairs = dict.fromkeys((files[owner[at]], files[owner[at + 1]]) for at in doubled)
         one, other = next(iter(pairs))
-        more = f" (and {len(pairs) - 1} more pairs of files)" if len(pairs) > 1 else ""
+        more = f" (and so for {count_of(len(pairs) - 1, 'more pair')} of files)" if len(pairs) > 1 else ""
         what = f"the day {days.words(days.numbers[doubled[0] + 1])} is in both {one} and {other}{more}"
-        return [Fault(what, where, "Each day may be in one file only: take one of them out of `files`.")]
+        return [Fault(what, where, "Each day may be in one file only: take one of them out of [weather] files.")]
     if np.median(steps) > 1:
         what = f"the data are not daily: a step every {int(np.median(steps))} days"
         return [Fault(what, where, "This program reads daily grids: name files with a value for each day.")]
@@ -239,8 +241,8 @@ def gap_words(days: Days) -> str:
         days.words(run[0]) if len(run) == 1 else f"{days.words(run[0])} to {days.words(run[-1])}"
         for run in runs[:5]
     ]
-    more = f" and {len(runs) - 5} more gaps" if len(runs) > 5 else ""
-    return f"{len(missing)} days are missing: {', '.join(shown)}{more}"
+    more = f" and {count_of(len(runs) - 5, 'more gap')}" if len(runs) > 5 else ""
+    return f"{count_of(len(missing), 'day is', 'days are')} missing: {', '.join(shown)}{more}"
 
 
 def time_coordinate(first: int, last: int, calendar: str) -> xr.Variable:

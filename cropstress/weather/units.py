@@ -70,7 +70,7 @@ def read_unit(text: str) -> pint.Unit:
     spelling = SPELLINGS.get(text.strip().lower(), text.strip())
     try:
         return registry.Unit(spelling)
-    except (pint.errors.PintError, TypeError, ValueError, AttributeError, SyntaxError) as error:
+    except Exception as error:  # the parser raises many kinds, down to failed assertions
         raise UnitError(f"the unit '{text}' cannot be read") from error
 
 
@@ -118,10 +118,8 @@ def conversion(text: str, quantity: Quantity) -> Conversion:
             return Conversion(
                 factor, offset, form.is_sum, _words(text, quantity.unit, factor, offset, form.is_sum)
             )
-    fits = " or ".join(form.unit for form in quantity.forms)
-    raise UnitError(
-        f"the unit '{text}' does not fit {quantity.meaning}, which is measured in units like {fits}"
-    )
+    fits = " or ".join(quantity.usual_units)
+    raise UnitError(f"the unit '{text}' does not fit {quantity.meaning}, which comes in units like {fits}")
 
 
 def to_unit(text: str, target: str) -> Conversion:

@@ -365,7 +365,7 @@ def test_area_in_hectares(weather: xr.Dataset, write_grid: Write, tmp_path: Path
         (-0.1, "1", "below 0"),
         (1e6, "ha", "more than the whole cell"),
         (0.5, None, "no unit"),
-        (0.5, "K", "not a unit like"),
+        (0.5, "K", "neither that of a share nor that of an area"),
     ],
 )
 def test_area_at_fault(

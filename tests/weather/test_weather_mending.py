@@ -116,7 +116,7 @@ def test_systematic_faults() -> None:
     counts = {"tmin_above_tmax_masked": 30, "radiation_below_zero_mended": 500, "wind_below_zero_masked": 4}
     worst = {"tmin_above_tmax_masked": "tmin 40 above tmax 20 degC on 2021-06-01 at 40.0 N"}
     (fault,) = judge_mends(counts, 1000, worst)
-    assert "30 of 1000 cell-days (3.0%)" in fault.what
+    assert "30 of 1000 cell-days (3.0 %)" in fault.what
     assert "tmin 40 above tmax 20" in fault.what
     assert "unit" in fault.remedy
     assert judge_mends(counts, 3001) == []
@@ -126,4 +126,4 @@ def test_systematic_faults() -> None:
 
 def test_words() -> None:
     words = mend_words({"wind_below_zero_masked": 1, "radiation_below_zero_mended": 7})
-    assert words == ["radiation below zero: 7 cell-days mended", "wind speed below zero: 1 cell-days masked"]
+    assert words == ["radiation below zero: 7 cell-days mended", "wind speed below zero: 1 cell-day masked"]
