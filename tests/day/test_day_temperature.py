@@ -129,4 +129,4 @@ def test_humidity_is_limited_to_saturation_at_each_moment() -> None:
     saturated = 0.6108 * np.exp(17.27 * sky[0] / (sky[0] + 237.3))  # FAO-56 Eq. 11
     limited = saturated < weather.vapour_pressure
     assert limited.any()
-    np.testing.assert_allclose(sky[1], np.where(limited, saturated, weather.vapour_pressure), rtol=1e-9)
+    np.testing.assert_allclose(sky[1], np.where(limited, saturated, weather.vapour_pressure), rtol=1e-8)
