@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import numpy as np
-from plain_day import Crop, Weather, saturation, sun_of, sunset_temperature
 
 from cropstress.day import block, course
 from cropstress.leaf.parameters import leaf_record
 from cropstress.leaf.solve import LANES
+
+from plain_day import Crop, Weather, saturation, sun_of, sunset_temperature
 
 ROWS = {
     "assimilation": block.ASSIMILATION,

@@ -10,11 +10,12 @@ import math
 
 import numpy as np
 import pytest
-from block_day import block_sky, random_weather
-from plain_day import DIFFUSE_EXTINCTION, light_at_depth
 from scipy.integrate import quad
 
 from cropstress.day import block, canopy
+
+from block_day import block_sky, random_weather
+from plain_day import DIFFUSE_EXTINCTION, light_at_depth
 
 VISIBLE, NEAR_INFRARED = 0.15, 0.80
 SUN_AND_LEAF_AREA = list(itertools.product([1.0, 0.6, 0.2, 0.05, 0.011], [0.01, 0.3, 2.0, 7.0]))  # sine, 1

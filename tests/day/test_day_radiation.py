@@ -7,10 +7,11 @@ from dataclasses import replace
 import numpy as np
 import pvlib
 import pytest
-from block_day import block_sky, random_weather
-from plain_day import erbs_diffuse_share, sine_of_elevation, sky_of, sun_of
 
 from cropstress.day import block, course
+
+from block_day import block_sky, random_weather
+from plain_day import erbs_diffuse_share, sine_of_elevation, sky_of, sun_of
 
 BEAM, DIFFUSE, LONGWAVE, EXTINCTION = 2, 3, 4, 5
 LATITUDES = np.linspace(-65.0, 65.0, block.CELLS)

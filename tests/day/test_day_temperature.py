@@ -8,10 +8,11 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from block_day import block_daylight, block_sky, random_weather
-from plain_day import air_by_day, air_by_night, sun_of, sunset_temperature
 
 from cropstress.day import block, course
+
+from block_day import block_daylight, block_sky, random_weather
+from plain_day import air_by_day, air_by_night, sun_of, sunset_temperature
 
 DENSE = 100_000  # moments in which a night or a day is counted
 

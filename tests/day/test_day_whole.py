@@ -6,12 +6,13 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from block_day import block_day, block_sky, random_weather, summer_weather
-from plain_day import CAUSES, Crop, Weather, night_respiration, plain_day
 from scipy.integrate import quad
 
 from cropstress.crops import load_crop
 from cropstress.day import block, course, worlds
+
+from block_day import block_day, block_sky, random_weather, summer_weather
+from plain_day import CAUSES, Crop, Weather, night_respiration, plain_day
 
 AMOUNTS = ("assimilation", "lost_to_heat", "lost_to_photorespiration", "photorespired_co2", *CAUSES)
 TEMPERATURES = ("highest_leaf", "largest_leaf_excess", "smallest_leaf_excess", "daytime_deficit")
