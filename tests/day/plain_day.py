@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -203,11 +204,12 @@ def leaves_of(sky: Sky, crop: Crop) -> list[Leaves]:
         depth = crop.leaf_area * (node + 1.0) / 2.0
         step = weight / 2.0 * crop.leaf_area
         sunlit_share = np.exp(-kb * depth)  # 1 in the dark: all leaves are one class
-        visible, infrared = (light_at_depth(depth, *half[:2], kb, half[2]) for half in halves)
+        visible_here, infrared_here = (light_at_depth(depth, *half[:2], kb, half[2]) for half in halves)
         longwave = kd * np.exp(-kd * depth) * sky.longwave
         capacity = np.exp(-decline * (node + 1.0) / 2.0)
         for number, share in enumerate((sunlit_share, 1.0 - sunlit_share)):
-            parts = (1.0, visible[number], visible[number] + infrared[number] + longwave, capacity)
+            every = visible_here[number] + infrared_here[number] + longwave
+            parts = (1.0, visible_here[number], every, capacity)
             for row, part in enumerate(parts):
                 sums[number, row] += step * share * part
     leaves = []
@@ -342,7 +344,7 @@ def plain_day(crop: Crop, weather: Weather, points: int = 8) -> dict[str, np.nda
     leaf = leaf_record(crop.profile)
     sky = sky_of(weather, points)
     shape = sky.air.shape
-    sums = dict.fromkeys(
+    sums: dict[str, Any] = dict.fromkeys(
         ("assimilation", "lost_to_heat", "lost_to_photorespiration", "photorespired_co2", *CAUSES), 0.0
     )
     excess = []
