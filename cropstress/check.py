@@ -71,7 +71,10 @@ def _entry_lines(job: Job, entry: Entry) -> list[str]:
         ),
     ]
     for season, year in enumerate(entry.years):
-        sown = entry.sowing[season][entry.sowing[season] >= 0]
+        sown = entry.sowing[season][(entry.sowing[season] >= 0) & entry.grown]
+        if not sown.size:
+            lines.append(f"    season {year}: sown in no cell where the crop is grown")
+            continue
         first, last = int(sown.min()), int(sown.max())
         end = last + sum(crop.days) - 1
         if entry.stages == "thermal_time":
@@ -95,5 +98,6 @@ def _setting_lines(resolved: dict[str, Any], prefix: str = "") -> list[str]:
             for number, part in enumerate(value, 1):
                 lines += _setting_lines(part, f"{prefix}{key}[{number}].")
         else:
-            lines.append(f"  {prefix}{key} = {value}")
+            shown = "not set" if value is None else str(value).lower() if isinstance(value, bool) else value
+            lines.append(f"  {prefix}{key} = {shown}")
     return lines

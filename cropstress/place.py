@@ -43,8 +43,6 @@ _COLUMNS = {
 }
 _NO_LEAF = 1e29  # the kernel's highest and lowest of nothing are 1e30
 
-_NO_LEAF = -1e29  # degC: a day without leaf area has no leaf temperature
-
 
 def nearest_cell(latitude: np.ndarray, longitude: np.ndarray, wanted: tuple[float, float]) -> tuple[int, float]:
     """Return the number of the nearest cell centre and its distance [km] on a sphere of 6371 km."""
@@ -143,7 +141,6 @@ def _cell_size(latitude: np.ndarray, longitude: np.ndarray, row: int, column: in
     here = (latitude[row, column], longitude[row, column])
     for r, c in ((row + 1, column), (row - 1, column), (row, column + 1), (row, column - 1)):
         if 0 <= r < rows and 0 <= c < columns:
-            here = (latitude[row, column], longitude[row, column])
             _, step = nearest_cell(latitude[r : r + 1, c], longitude[r : r + 1, c], here)
             largest = max(largest, step)
     return largest
@@ -154,9 +151,7 @@ def _at_cell(entry: Entry, cell: int) -> Entry:
     return replace(entry, sowing=entry.sowing[:, cell : cell + 1], grown=entry.grown[cell : cell + 1])
 
 
-def _table(
-    daily: np.ndarray, totals: np.ndarray, entry: Entry, one: xr.Dataset, axis: TimeAxis
-) -> pd.DataFrame:
+def _table(daily: np.ndarray, totals: np.ndarray, entry: Entry, one: xr.Dataset, axis: TimeAxis) -> pd.DataFrame:
     """Return the days of the seasons, a row a day: the weather as it was used, and what the day gave."""
     days = np.nonzero(np.isfinite(daily[:, at.DAILY_STAGE]))[0]
     sown = totals[np.isfinite(totals[:, at.SOWING]), at.SOWING]

@@ -20,13 +20,9 @@ from cropstress.region.plan import Plan, plan_blocks, plan_tiles
 from cropstress.region.results import gather, make_result
 
 
-def make_plan(
-    weather: xr.Dataset, tile: tuple[int, int] | None = None, block_days: int | None = None
-) -> Plan:
+def make_plan(weather: xr.Dataset, tile: tuple[int, int] | None = None, block_days: int | None = None) -> Plan:
     """Plan the blocks and tiles of a canonical weather dataset."""
-    chunks = [
-        variable.chunks[0] for variable in weather.data_vars.values() if variable.chunks and variable.ndim == 3
-    ]
+    chunks = [variable.chunks[0] for variable in weather.data_vars.values() if variable.chunks and variable.ndim == 3]
     rows, columns = weather["tmax"].shape[1:]
     return Plan(plan_blocks(weather.sizes["time"], chunks, block_days), plan_tiles(rows, columns, tile))
 
@@ -48,7 +44,12 @@ def compute_results(
     gas = has_gas_exchange(weather)
     results = [
         make_result(
-            entry, gather(entry, computed.tiles[entry.name], cells, computed.observed), weather, axis, options, gas,
+            entry,
+            gather(entry, computed.tiles[entry.name], cells, computed.observed),
+            weather,
+            axis,
+            options,
+            gas,
             attributes,
         )
         for entry in entries

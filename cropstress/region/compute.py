@@ -96,9 +96,7 @@ def load_block(dataset: xr.Dataset, axis: TimeAxis, ground: Ground, first: int, 
     days = after - first
     shape = (days, ground.latitude.size)
     raw = {name: np.asarray(loaded[name].values, dtype=float).reshape((days, -1, 1)) for name in names}
-    above = extraterrestrial_radiation(
-        axis.sun_day()[first:after, None, None], ground.latitude_degrees[None, :, None]
-    )
+    above = extraterrestrial_radiation(axis.sun_day()[first:after, None, None], ground.latitude_degrees[None, :, None])
     mended = mend_block(raw, np.broadcast_to(above, (days, shape[1], 1)))
     weather = np.empty((len(VARIABLES), *shape))
     for number, name in enumerate(VARIABLES):
@@ -247,9 +245,7 @@ def compute(
                 progress(finished / total)
         return state
 
-    needed = [
-        entry.grown & (entry.sowing >= 0).any(axis=0) for entry in entries
-    ]
+    needed = [entry.grown & (entry.sowing >= 0).any(axis=0) for entry in entries]
     for k, (first, after) in enumerate(plan.blocks):
         brake = ("done", k - BLOCKS_ALIVE) if k >= BLOCKS_ALIVE else None
         graph["load", k] = (load, first, after, brake)

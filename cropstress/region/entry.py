@@ -75,9 +75,7 @@ class Entry:
     remarks: list[str] = field(default_factory=list)
 
 
-def season_sowing(
-    dates: Callable[[int], np.ndarray], year: int, length: int, axis: TimeAxis
-) -> np.ndarray:
+def season_sowing(dates: Callable[[int], np.ndarray], year: int, length: int, axis: TimeAxis) -> np.ndarray:
     """Return the day numbers of sowing of a season that is harvested in a year.
 
     Parameters

@@ -141,9 +141,7 @@ def _status(entry: Entry, totals: np.ndarray, options: Options, observed: np.nda
     return status
 
 
-def _measures(
-    entry: Entry, totals: np.ndarray, axis: TimeAxis, options: Options, gas: bool
-) -> dict[str, np.ndarray]:
+def _measures(entry: Entry, totals: np.ndarray, axis: TimeAxis, options: Options, gas: bool) -> dict[str, np.ndarray]:
     """Return every measure on all cells, (seasons, cells)."""
     fields = {name: totals[:, SERIES.index(name)] for name in SERIES}
     fields |= {name: totals[:, row] for name, row in _ROWS.items()}
