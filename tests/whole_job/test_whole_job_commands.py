@@ -90,6 +90,7 @@ def test_only_what_there_is(inputs: Path, command: Command, only: str, words: st
     assert not (inputs / "results").exists()
 
 
+@pytest.mark.slow
 def test_folder_of_this_run_is_replaced_and_of_another_refused(inputs: Path, command: Command) -> None:
     out = inputs / "out"
     arguments = ("run", inputs / "season.toml", "--out", out, "--quiet")
