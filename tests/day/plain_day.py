@@ -13,6 +13,7 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
+from plain_leaf import gross_without_oxygenation, respiration_response
 
 from cropstress.crops import CropProfile
 from cropstress.leaf import solve
@@ -221,89 +222,6 @@ def leaves_of(sky: Sky, crop: Crop) -> list[Leaves]:
     return leaves
 
 
-def peaked(activation: float, deactivation: float, entropy: np.ndarray | float, temperature: np.ndarray) -> np.ndarray:
-    """Peaked Arrhenius response, 1 at 25 degC; Medlyn et al. 2002, Eq. 17; energies in kJ mol-1."""
-    kelvin, reference, gas = temperature + 273.15, 298.15, 8.314
-
-    def falling(at: np.ndarray | float) -> np.ndarray:
-        return 1.0 + np.exp((at * entropy - 1000.0 * deactivation) / (gas * at))
-
-    return rising(activation, temperature) * falling(reference) / falling(kelvin)
-
-
-def rising(activation: float, temperature: np.ndarray) -> np.ndarray:
-    """Arrhenius response, 1 at 25 degC; energy in kJ mol-1."""
-    return np.exp(1000.0 * activation * (temperature - 25.0) / (298.15 * 8.314 * (temperature + 273.15)))
-
-
-def respiration_response(profile: CropProfile, temperature: np.ndarray) -> np.ndarray:
-    """Respiration, 1 at 25 degC; Heskel et al. 2016."""
-    linear, quadratic = profile.number("respiration_linear"), profile.number("respiration_quadratic")
-    return np.exp(linear * (temperature - 25.0) + quadratic * (temperature**2 - 25.0**2))
-
-
-def gross_without_oxygenation(
-    crop: Crop, temperature: np.ndarray, deficit: np.ndarray, lanes: np.ndarray
-) -> np.ndarray:
-    """Gross rate of a leaf without oxygenation at a held temperature and deficit [umol m-2 s-1].
-
-    Farquhar et al. 1980 without oxygen, von Caemmerer 2000 without oxygen, with the stomata of Medlyn et al. 2011.
-    """
-    number = crop.profile.number
-    photons, capacity, wind = lanes[solve.PHOTONS], lanes[solve.CAPACITY], lanes[solve.WIND]
-    pressure, growth = lanes[solve.PRESSURE], lanes[solve.GROWTH_TEMPERATURE]
-    vcmax25 = capacity * number("carboxylation_capacity")
-    c3 = crop.profile.pathway == "C3"
-
-    def capacity_at(process: str, at_25: np.ndarray) -> np.ndarray:
-        if c3 and process != "triose_phosphate":
-            entropy = number(f"{process}_entropy_intercept") + number(f"{process}_entropy_slope") * growth
-        else:
-            entropy = number(f"{process}_entropy")
-        response = peaked(number(f"{process}_activation"), number(f"{process}_deactivation"), entropy, temperature)
-        return at_25 * response
-
-    vcmax = capacity_at("carboxylation", vcmax25)
-    jmax = capacity_at("electron_transport", number("electron_transport_ratio") * vcmax25)
-    useful = 0.5 * (1.0 - number("electron_loss_fraction")) * photons
-    theta = number("light_curvature")
-    j = (useful + jmax - np.sqrt((useful + jmax) ** 2 - 4.0 * theta * useful * jmax)) / (2.0 * theta)
-    rd = vcmax25 * number("respiration_ratio") * respiration_response(crop.profile, temperature)
-    kc = number("michaelis_co2") * rising(number("michaelis_co2_activation"), temperature)
-    if c3:
-        kc = kc * 101.3 / pressure
-        tpu = capacity_at("triose_phosphate", number("triose_phosphate_ratio") * vcmax25)
-    else:
-        vpmax = capacity_at("pep_carboxylation", number("pep_carboxylation_ratio") * vcmax25)
-        vpr = vpmax / number("pep_carboxylation_ratio") * number("pep_regeneration_ratio")
-        kp = number("pep_michaelis") * rising(number("pep_michaelis_activation"), temperature)
-        gbs, x, rm = number("bundle_sheath_conductance"), number("electron_partition"), 0.5 * rd
-
-    def demand(inside: np.ndarray) -> np.ndarray:
-        if c3:
-            return np.minimum(np.minimum(vcmax * inside / (inside + kc), j / 4.0), 3.0 * tpu) - rd
-        mesophyll = inside * pressure / 100.0
-        pumped = np.minimum(vpmax * mesophyll / (mesophyll + kp), vpr) - rm + gbs * mesophyll
-        used = vcmax - rd
-        total = pumped + used + gbs * kc
-        enzymes = (total - np.sqrt(total**2 - 4.0 * (used * pumped - rd * gbs * kc))) / 2.0
-        light = np.minimum(x * j / 2.0 - rm + gbs * mesophyll, (1.0 - x) * j / 3.0 - rd)
-        return np.minimum(enzymes, light)
-
-    boundary = 2.0 * 1.4 * 0.147 * np.sqrt(np.maximum(wind, 0.5) / (0.72 * number("leaf_width")))
-    factor = 1.6 * (1.0 + number("stomatal_slope") / np.sqrt(np.maximum(deficit, 0.05)))
-    co2 = lanes[solve.CO2]
-    low, high = -2.0 * rd, co2 * boundary / 1.37
-    for _ in range(70):
-        rate = 0.5 * (low + high)
-        surface = co2 - 1.37 * rate / boundary
-        opened = number("stomatal_intercept") * surface + factor * np.maximum(rate, 0.0)  # gs times surface CO2
-        inside = surface - 1.6 * rate * surface / opened
-        too_low = (inside > 0.0) & (demand(np.maximum(inside, 0.0)) > rate)
-        low, high = np.where(too_low, rate, low), np.where(too_low, high, rate)
-    return 0.5 * (low + high) + rd
-
-
 def lanes_of(crop: Crop, weather: Weather, leaves: Leaves, air: np.ndarray, humidity: np.ndarray) -> np.ndarray:
     """Lay a class of leaves out as the leaf solver reads it."""
     lanes = np.empty((solve.LEAF_INPUTS, air.size))
@@ -358,10 +276,10 @@ def plain_day(crop: Crop, weather: Weather, points: int = 8) -> dict[str, np.nda
         )
         excess.append((actual[solve.LEAF_TEMPERATURE].reshape(shape) - sky.air, leaves.area))
         gross_dry = gross_without_oxygenation(
-            crop, cool_open[solve.LEAF_TEMPERATURE], actual_open[solve.DEFICIT], actual_lanes
+            crop.profile, cool_open[solve.LEAF_TEMPERATURE], actual_open[solve.DEFICIT], actual_lanes
         )
         gross_warm = gross_without_oxygenation(
-            crop, actual_open[solve.LEAF_TEMPERATURE], cool_open[solve.DEFICIT], actual_lanes
+            crop.profile, actual_open[solve.LEAF_TEMPERATURE], cool_open[solve.DEFICIT], actual_lanes
         )
         g, g_cool, g_open, g_cool_open = (
             world[solve.ASSIMILATION] + world[solve.RESPIRATION] for world in (actual, cool, actual_open, cool_open)
