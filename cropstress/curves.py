@@ -83,7 +83,7 @@ def _cause_lines(profile: CropProfile, photons: float, humidity: float) -> list[
     for row, temperature in enumerate(air):
         shares = {cause: float(loss[f"lost_to_heat_by_{cause}"].values[row]) for cause in CAUSES}
         split = (
-            ", ".join(f"{cause} {100.0 * share / lost[row]:.0f}" for cause, share in shares.items())
+            ", ".join(f"{cause} {round(100.0 * share / lost[row])}" for cause, share in shares.items())
             if lost[row] > 0.0
             else "nothing lost" if lost[row] == 0.0 else "a gain"
         )  # fmt: skip

@@ -74,6 +74,26 @@ def test_the_numerical_floors_load_neither_xarray_nor_dask() -> None:
     assert shown.stdout.strip() == "[]"
 
 
+@pytest.mark.parametrize(("library", "floors"), [("dask", ("weather/", "region/")), ("matplotlib", ("report/",))])
+def test_a_library_has_its_floors(library: str, floors: tuple[str, ...]) -> None:
+    """Lazy arrays are laid together in `weather`, work is shared out in `region`, and only `report` draws."""
+    importing = {
+        path.relative_to(PACKAGE).as_posix()
+        for path in PACKAGE.rglob("*.py")
+        for node in ast.walk(ast.parse(path.read_text(encoding="utf-8")))
+        if (isinstance(node, ast.Import) and any(alias.name.split(".")[0] == library for alias in node.names))
+        or (isinstance(node, ast.ImportFrom) and str(node.module).split(".")[0] == library)
+    }
+    assert importing
+    assert {path for path in importing if not path.startswith(floors)} == set()
+
+
+def test_the_package_itself_loads_nothing_heavy() -> None:
+    code = "import sys, cropstress\ncropstress.__all__\nprint(sorted({'numpy', 'numba', 'xarray'} & set(sys.modules)))"
+    shown = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert shown.stdout.strip() == "[]"
+
+
 def test_help_loads_nothing_heavy() -> None:
     heavy = {"numpy", "numba", "xarray", "dask", "pydantic", "matplotlib", "rasterio"}
     code = (
