@@ -39,6 +39,7 @@ _BLANK_STYLE: dict[int, tuple[str, str]] = {
     kinds.NO_VALUE: (colours.BLANK, "----"),
 }
 _HATCH_WIDTH = 0.5
+_BORDER_WIDTH = 0.5
 
 
 @dataclass(frozen=True)
@@ -160,6 +161,8 @@ class MapPanel:
         for category, (hatch, ink) in self._hatches().items():
             if category in self.present:
                 axes.add_patch(_hatched(shown == category, y_edges, x_edges, hatch, ink))
+        # White hatched cells beside white ones that are exactly 0: without a line a coast would be ragged
+        axes.add_patch(_border(np.isin(shown, kinds.WITHOUT_VALUE), y_edges, x_edges))
         axes.set_xlim(x_edges[0], x_edges[-1])
         axes.set_ylim(y_edges[0], y_edges[-1])
         axes.set_aspect("auto")
@@ -298,6 +301,17 @@ def _hatched(where: np.ndarray, y_edges: np.ndarray, x_edges: np.ndarray, hatch:
     )
     patch.set_hatch_linewidth(_HATCH_WIDTH)
     return patch
+
+
+def _border(where: np.ndarray, y_edges: np.ndarray, x_edges: np.ndarray) -> PathPatch:
+    """A thin line wherever cells of a kind meet others."""
+    row, column = np.nonzero(where[:, 1:] != where[:, :-1])
+    upright = np.stack([x_edges[column + 1], y_edges[row], x_edges[column + 1], y_edges[row + 1]], axis=-1)
+    row, column = np.nonzero(where[1:] != where[:-1])
+    level = np.stack([x_edges[column], y_edges[row + 1], x_edges[column + 1], y_edges[row + 1]], axis=-1)
+    ends = np.concatenate([upright, level]).reshape(-1, 2)
+    codes = np.tile([Outline.MOVETO, Outline.LINETO], len(ends) // 2)
+    return PathPatch(Outline(ends, codes), fill=False, edgecolor=colours.PALE_INK, linewidth=_BORDER_WIDTH, zorder=3)
 
 
 def _ticks(edges: np.ndarray, grid: MapGrid, letter: str) -> list[tuple[float, str]]:

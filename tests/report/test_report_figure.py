@@ -92,6 +92,17 @@ def test_the_page_says_what_it_must(result_maker: Maker) -> None:
         assert words in text, words
 
 
+def test_a_line_runs_where_the_sea_meets_the_land(result_maker: Maker) -> None:
+    """Both may be white; the line runs on every edge between them and on no other."""
+    result = result_maker()
+    without = np.isin(kinds.categories(result, classes_for("hot_days"), 2021), kinds.WITHOUT_VALUE)
+    edges = (without[:, 1:] != without[:, :-1]).sum() + (without[1:] != without[:-1]).sum()
+    (axes,) = [each for each in map_page(result, "hot_days", 2021).figure.axes if each.get_xlim() != (0.0, 6.7)]
+    drawn = [patch for patch in axes.patches if not patch.get_fill() and not patch.get_hatch()]
+    assert edges > 10
+    assert [len(patch.get_path().vertices) for patch in drawn] == [2 * edges]
+
+
 def test_no_map_of_a_c4_crop_blames_photorespiration(result_maker: Maker) -> None:
     c4, c3 = (printed(map_page(result_maker(pathway=pathway), "leading_cause", 2021)) for pathway in ("C4", "C3"))
     assert "photorespiration" not in c4 and "no single cause" in c4
