@@ -11,6 +11,7 @@ from cropstress.crops import CropProfile
 from cropstress.errors import Fault
 from cropstress.leaf.parameters import leaf_record
 from cropstress.region.calendar import TimeAxis
+from cropstress.season.layout import REMEMBERED_DAYS
 from cropstress.season.parameters import season_record
 
 
@@ -157,6 +158,9 @@ def make_entry(
             )
         ]
     sowing = np.array(sowings, dtype=np.int64)
+    faults = _overlapping(where, kept, sowing, length) if stages == "days" else _forgotten(where, profile)
+    if faults:
+        return None, faults
     starts = [int(row[row >= 0].min()) for row in sowing]
     if stages == "thermal_time":
         ends = [int(row.max()) for row in sowing[1:]] + [axis.length - 1]
@@ -173,6 +177,36 @@ def make_entry(
         ),
         [],
     )  # fmt: skip
+
+
+def _overlapping(where: str, years: Sequence[int], sowing: np.ndarray, length: int) -> list[Fault]:
+    """Tell the seasons that are sown before the season before them has ended."""
+    faults = []
+    for year, before, after in zip(years[1:], sowing[:-1], sowing[1:], strict=True):
+        if ((before >= 0) & (after >= 0) & (after < before + length)).any():
+            faults.append(
+                Fault(
+                    f"the season {year} is sown before the season before it, of {length} days, has ended",
+                    where,
+                    "Name every second year in [seasons] years, or shorten the stages of the profile.",
+                )
+            )
+    return faults
+
+
+def _forgotten(where: str, profile: CropProfile) -> list[Fault]:
+    """Tell a flowering window that opens earlier than is remembered until thermal time tells the flowering."""
+    offset, window = profile.flowering_offset, profile.flowering_window
+    if offset is None or window is None or offset + window[0] >= -REMEMBERED_DAYS:
+        return []
+    return [
+        Fault(
+            f"the flowering window opens {-(offset + window[0])} days before mid-season, but under thermal time only "
+            f"{REMEMBERED_DAYS} days are remembered",
+            where,
+            "Let the window open later, or give the stages in days.",
+        )
+    ]
 
 
 def _outside(where: str, year: int, numbers: np.ndarray, axis: TimeAxis, length: int) -> Fault:

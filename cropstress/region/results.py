@@ -12,7 +12,7 @@ from cropstress.region.calendar import TimeAxis
 from cropstress.region.compute import TileState
 from cropstress.region.entry import Entry, Options
 from cropstress.season import layout as at
-from cropstress.season.measures import CAUSES, CELL_STATUS, LEADING_CAUSE_MISSING, MEASURES, SERIES, STAGES
+from cropstress.season.measures import CAUSES, CELL_STATUS, LEADING_CAUSE_MISSING, MEASURES, NO_STAGE, SERIES, STAGES
 
 NO_LEADING_CAUSE = 0.01  # share lost below which no cause is named
 
@@ -105,6 +105,8 @@ def make_result(
                 ("season", step, row_name, column_name), values.reshape(len(entry.years), -1, *shape),
             )  # fmt: skip
     variables["cell_status"] = (dims, status.astype(np.int8).reshape(-1, *shape))
+    stage = np.where(blank, NO_STAGE, totals[:, at.LAST_STAGE])
+    variables["last_stage"] = (dims, stage.astype(np.int8).reshape(-1, *shape))
     coords = _coordinates(entry, totals, axis, weather)
     result = xr.Dataset(variables, coords=coords)
     crop = entry.profile

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
@@ -23,7 +24,7 @@ from cropstress.report.cf_attributes import (
 from cropstress.report.grid import MapGrid, grid_mapping_name, map_grid
 from cropstress.report.statistics import loaded
 from cropstress.report.writing import written_aside
-from cropstress.season.measures import CELL_STATUS, Measure
+from cropstress.season.measures import CELL_STATUS, STAGES, Measure
 
 EPOCH = "1900-01-01"
 FILL: dict[str, float | int] = {"float32": np.nan, "int16": -9999, "int8": -1}
@@ -93,7 +94,10 @@ class _Writer:
         for name, measure, words in measures_in(self.result):
             self._measure(file, name, measure, words)
         if "cell_status" in self.result:
-            self._cell_status(file)
+            self._flags(file, "cell_status", "whether the cell was computed, or why not", CELL_STATUS, "status_flag")
+        if "last_stage" in self.result:
+            stages = {name: number for number, name in enumerate(STAGES)}
+            self._flags(file, "last_stage", "growth stage of the last day of the season that lies in the data", stages)
 
     def _seasons(self, file: netCDF4.Dataset) -> None:
         years = np.asarray(self.result["season"].values, dtype=np.int32)
@@ -165,18 +169,25 @@ class _Writer:
             attributes["ancillary_variables"] = "cell_status"
         self._grid_variable(file, name, measure.dtype, dims, attributes, coordinates)
 
-    def _cell_status(self, file: netCDF4.Dataset) -> None:
+    def _flags(
+        self,
+        file: netCDF4.Dataset,
+        name: str,
+        long_name: str,
+        meanings: Mapping[str, int],
+        standard_name: str | None = None,
+    ) -> None:
         dims: tuple[str, ...] = (self.grid.y_name, self.grid.x_name)
-        if "season" in self.result["cell_status"].dims:
+        if "season" in self.result[name].dims:
             dims = ("season", *dims)
         attributes = {
-            "standard_name": "status_flag",
-            "long_name": "whether the cell was computed, or why not",
-            "flag_values": np.array(list(CELL_STATUS.values()), dtype=np.int8),
-            "flag_meanings": " ".join(CELL_STATUS),
+            **({"standard_name": standard_name} if standard_name else {}),
+            "long_name": long_name,
+            "flag_values": np.array(list(meanings.values()), dtype=np.int8),
+            "flag_meanings": " ".join(meanings),
         }
         coordinates = [*(["time"] if "season" in dims else []), *self.places]
-        self._grid_variable(file, "cell_status", "int8", dims, attributes, coordinates)
+        self._grid_variable(file, name, "int8", dims, attributes, coordinates)
 
     def _grid_variable(
         self,

@@ -252,6 +252,7 @@ def count_day(
             sums[at.DEFICIT_SUM] += answers[block.DAYTIME_DEFICIT, i]
     walk[row, at.DAYS, cell] += 1.0
     sums[at.SEASON_DAYS] += 1.0
+    sums[at.LAST_STAGE] = stage
     if daily.shape[1] > 0:
         for k in range(block.DAY_ANSWERS):
             daily[row, day, k, cell] = answers[k, i] if present and with_gas_exchange else np.nan

@@ -39,7 +39,8 @@ GROWING_DEGREE_DAYS = 33
 MENDED = 34
 SPELL = 35
 SPELL_START = 36
-TOTALS = 37
+LAST_STAGE = 37  # that of the last day of the season, counted or missing
+TOTALS = 38
 
 # Rows of the state that is carried from day to day.
 SEASON = 0  # number of the season under way, -1 for none
@@ -52,7 +53,8 @@ WALK = 6
 
 RECENT_DAYS = 30  # for the growth temperature; Kattge & Knorr 2007: the preceding month
 
-# Rows of the bits that remember the last 64 days, for windows that open before flowering is known.
+REMEMBERED_DAYS = 64  # bits of a word
+# Rows of the bits that remember them, for windows that open before flowering is known.
 HOT_BITS = 0
 COOLER_BITS = 1
 WARMER_BITS = 2

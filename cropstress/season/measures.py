@@ -293,6 +293,9 @@ DRAWN: tuple[str, ...] = tuple(measure.name for measure in _TABLE if measure.dra
 #: Growth stages of FAO-56 Table 11, in order.
 STAGES: tuple[str, ...] = ("initial", "development", "mid", "late")
 
+#: `last_stage` of a result where there is none: nothing was computed.
+NO_STAGE = -1
+
 #: Causes of the loss to heat; `leading_cause` holds 1 for the first, 0 for none.
 CAUSES: tuple[str, ...] = ("photorespiration", "stomata", "enzymes", "respiration")
 LEADING_CAUSE_NONE = 0

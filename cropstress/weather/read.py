@@ -30,8 +30,10 @@ from cropstress.weather.recognise import (
 from cropstress.weather.times import gap_words
 
 #: What cannot be computed without each; with tmax and tmin alone the counts of hot days and nights still can.
-_NEEDS_LIGHT = "assimilation, both losses and their causes, leaf temperatures and hot-leaf days"
-_NEEDS_HUMIDITY = f"{_NEEDS_LIGHT}, dry-air days and the mean vapour pressure deficit"
+_NEEDS_LIGHT_AND_HUMIDITY = (
+    "assimilation, both losses and their causes, leaf temperatures and hot-leaf days, dry-air days and the mean "
+    "vapour pressure deficit"
+)
 
 
 @dataclass(frozen=True)
@@ -352,12 +354,12 @@ def _note_not_computed(work: _Work, recognised: Recognised) -> None:
     if "radiation" not in work.layers:
         looked = looked_for(QUANTITIES["radiation"])
         near = _near_words(recognised, ("radiation",))
-        work.not_computed.append(f"{_NEEDS_LIGHT}: no radiation was found; looked for {looked}{near}")
+        work.not_computed.append(f"{_NEEDS_LIGHT_AND_HUMIDITY}: no radiation was found; looked for {looked}{near}")
     if work.way is None:
         names = dict.fromkeys(name for each in HUMIDITY for name in QUANTITIES[each].standard_names)
         looked = f"the standard names {', '.join(names)}"
         near = _near_words(recognised, HUMIDITY)
-        work.not_computed.append(f"{_NEEDS_HUMIDITY}: no humidity was found; looked for {looked}{near}")
+        work.not_computed.append(f"{_NEEDS_LIGHT_AND_HUMIDITY}: no humidity was found; looked for {looked}{near}")
 
 
 def _near_words(recognised: Recognised, names: tuple[str, ...]) -> str:

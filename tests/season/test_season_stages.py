@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+import xarray as xr
 from small_season import (
     COOL,
     HOT,
@@ -12,6 +13,7 @@ from small_season import (
     day_of_year,
     first,
     make_weather,
+    result_or_refusal,
     short_crop,
     thermal_crop,
 )
@@ -149,6 +151,24 @@ def test_windows_reach_64_days_back(block_days: int | None) -> None:
     expected = [float(6 <= day <= 58) for day in range(100)]
     assert result["hot_days_flowering"].values[0, 0].tolist() == expected
     assert result["warm_nights_flowering"].values[0, 0].tolist() == expected
+
+
+def test_windows_that_open_still_earlier_are_whole_or_refused() -> None:
+    """A window from 80 days before mid-season to its start: 81 hot days are 81, or the profile is refused."""
+
+    def compute_result() -> xr.Dataset:
+        crop = thermal_crop(
+            sums=(480, 600, 120, 120), days=(40, 50, 10, 10), base_temperature=7.0, ceiling_temperature=19.0,
+            flowering_offset=-60, flowering_window_start=-20, flowering_window_end=60,
+        )  # fmt: skip
+        return assess(make_weather(np.full(120, HOT)), crop, stages="thermal_time")
+
+    result = result_or_refusal(compute_result)
+    if isinstance(result, str):
+        assert "window" in result
+    else:
+        assert first(result, "flowering_day") == MAY_FIRST + 30
+        assert first(result, "hot_days_flowering") == 81
 
 
 @pytest.mark.parametrize("name", ["potato", "sugarcane"])

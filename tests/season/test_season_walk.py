@@ -14,6 +14,7 @@ from small_season import (
     day_of_year,
     first,
     make_weather,
+    result_or_refusal,
     short_crop,
     thermal_crop,
 )
@@ -59,6 +60,16 @@ def test_flowering_not_reached_is_missing() -> None:
     before, opened = (assess(make_weather(np.full(days, HOT)), short_crop()) for days in (6, 7))
     assert np.isnan(first(before, "hot_days_flowering"))
     assert first(opened, "hot_days_flowering") == 1
+
+
+def test_the_stage_of_a_season_cut_short_can_be_read() -> None:
+    """Cut on its ninth day it is in mid-season: a variable, a coordinate or an attribute of the result says so."""
+    result = assess(make_weather(np.full(11, HOT)), short_crop(), "05-03")
+    said = {**result.data_vars, **result.coords, **result.attrs}
+    stages = {name: value for name, value in said.items() if "stage" in name and "by_stage" not in name}
+    del stages["stage"]
+    assert stages, "nothing tells the stage that a season cut short has reached"
+    assert {np.asarray(value).ravel()[0] for value in stages.values()} <= {2, "mid"}
 
 
 def test_missing_days_are_counted_and_skipped() -> None:
@@ -272,6 +283,16 @@ def temperature_file(weather: xr.Dataset, folder, *names: str) -> str:
     return str(path)
 
 
+def test_humidity_without_radiation_gives_dry_air_or_says_that_it_is_missing(tmp_path) -> None:
+    """Dry-air days and the mean deficit need no radiation: they are computed, or named among what is not."""
+    read = read_weather(temperature_file(random_weather(), tmp_path, "vapour_pressure"))
+    assert "vapour_pressure" in read.dataset and "radiation" not in read.dataset
+    result = assess(read.dataset, short_crop(), options=Options(allowed_missing=1.0))
+    said = " ".join(read.not_computed)
+    for name, words in (("dry_air_days", "dry-air days"), ("mean_vapour_pressure_deficit", "vapour pressure deficit")):
+        assert np.isfinite(result[name].values).all() or words in said, name
+
+
 def walk_alone(rows: list[tuple[np.ndarray, np.ndarray, float]], weather: xr.Dataset) -> list[np.ndarray]:
     """Carry one or several sets of parameters through the weather in one call of the kernel; totals and daily."""
     axis = time_axis(weather)
@@ -351,3 +372,15 @@ def test_seasons_in_other_calendars(calendar: str, start: str, sowing: str, day:
     assert first(result, "maturity_day") == day + 14
     assert first(result, "hot_days") == 35 - before
     assert first(result, "last_hot_day") == day + 35 - before - 1
+
+
+def test_a_season_longer_than_a_year_is_whole_or_refused() -> None:
+    """A crop of 400 days sown every year: a season is not cut by the next sowing without a word."""
+    weather = make_weather(np.full(1100, HOT), start="2020-01-01")
+    result = result_or_refusal(lambda: assess(weather, short_crop(stages=(100, 100, 100, 100))))
+    if isinstance(result, str):
+        assert "sow" in result
+    else:
+        assert result["season"].values[:2].tolist() == [2021, 2022]
+        assert result["season_days"].values[:2, 0, 0].tolist() == [400, 400]
+        assert result["hot_days"].values[:2, 0, 0].tolist() == [400, 400]
